@@ -1,0 +1,1 @@
+"""Floor 1, formulas only: backgrounds, fields and the regularised equation."""

@@ -1,0 +1,1 @@
+"""Floor 3: config, cells, verdicts and the dataset."""
