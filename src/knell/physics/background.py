@@ -55,9 +55,10 @@ class PowerLaw:
     @classmethod
     def from_q(cls, exponent: int, q: Fraction) -> PowerLaw:
         """The background with rational ``q``, whose coupling is then rational too."""
-        if not -1 < q <= Fraction(1, max(exponent - 1, 1)):
+        c_n = cls(exponent, Fraction(0)).c_n
+        if not -1 < q <= Fraction(1, exponent - 1):
             raise BackgroundError(f"q = {q}: must lie in (-1, 1/(n-1)]")
-        return cls(exponent, q / (2 * cls(exponent, Fraction(0)).c_n * ((1 + q) / 2) ** exponent))
+        return cls(exponent, q / (2 * c_n * ((1 + q) / 2) ** exponent))
 
     @property
     def c_n(self) -> Fraction:

@@ -54,6 +54,8 @@ def rational_slug(value: Fraction) -> str:
 
 def from_slug(slug: str) -> Fraction:
     """The inverse of `rational_slug`; raises `ValueError` for any other text."""
-    if not re.fullmatch(r"m?\d+(_[1-9]\d*)?", slug):
-        raise ValueError(f"{slug!r} is not a rational in file-name form")
-    return Fraction(slug.replace("_", "/").replace("m", "-"))
+    if re.fullmatch(r"m?\d+(_[1-9]\d*)?", slug):
+        value = Fraction(slug.replace("_", "/").replace("m", "-"))
+        if rational_slug(value) == slug:  # 18_20 reads as 9/10, whose name is 9_10: no second name for one file
+            return value
+    raise ValueError(f"{slug!r} is not a rational in file-name form")
