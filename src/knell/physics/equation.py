@@ -57,8 +57,9 @@ class Equation:
 class LocalEquation:
     """``(p φ')' + 2σK φ' + C φ = 0`` in ``x``, ``u = u_c + τx``, ``K = τH``, ``C = σK' - σ²Q - W``.
 
-    Primes are derivatives in ``x``. At a singular end ``K(0) = -1``, ``p(0) = 0`` and, where
-    the point is irregular, ``p'(0) = 0`` hold exactly and not to rounding.
+    Primes are derivatives in ``x``. At a singular end entered along the segment (``u_c = 0`` with
+    ``τ = 1``, ``u_c = 1`` with ``τ = -1``) ``K(0) = -1``, ``p(0) = 0`` and, where the point is
+    irregular, ``p'(0) = 0`` hold exactly and not to rounding; the opposite ``τ`` has ``K(0) = +1``.
     """
 
     p: tuple[Any, ...]
@@ -114,7 +115,7 @@ def local(equation: Equation, centre: Any, direction: int = 1) -> LocalEquation:
     if isinstance(centre, int) and centre in (0, 1):
         zero = 0 * equation.f[0]
         p[0] = zero
-        K[0] = zero - 1
+        K[0] = zero + (2 * centre - 1) * direction
         if centre == 0 or equation.degenerate:
             p[1] = zero
         if centre == 0:

@@ -79,7 +79,7 @@ def light_ring(background: PowerLaw) -> LightRing:
 
 @dataclass(frozen=True)
 class Window:
-    """The region ``0 < Re Mω <= re_max``, ``-depth <= Im Mω <= 0`` without the square of half-side ``excluded`` about 0."""
+    """``0 < Re Mω <= re_max``, ``-depth <= Im Mω <= 0``, less the square of half-side ``excluded`` about 0."""
 
     re_max: Fraction
     depth: Fraction
