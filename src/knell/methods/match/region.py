@@ -1,0 +1,87 @@
+"""The region of the ``Mω`` plane that a search covers, its outline, and the zeros counted inside."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from knell.physics.landmarks import Window
+
+# How far the region reaches past the negative imaginary axis, so that a zero a hair on either side
+# of it is seen, counted and put on its side.
+PAST_THE_AXIS = 0.02
+_SPACING = 0.02
+_TURN = 1.0
+_ROUNDS = 10
+_PARTS = 3
+
+
+class CountFailed(ArithmeticError):
+    """The argument of D along the outline could not be followed; there is no count, not a smaller one."""
+
+
+@dataclass(frozen=True)
+class Region:
+    """``-PAST_THE_AXIS <= Re Mω <= right``, ``-depth <= Im Mω <= 0`` less the square of half-side ``hole`` about 0."""
+
+    right: float
+    depth: float
+    hole: float
+    left: float = -PAST_THE_AXIS
+
+    @classmethod
+    def of(cls, window: Window) -> Region:
+        return cls(float(window.re_max), float(window.depth), float(window.excluded))
+
+    def contains(self, omega: NDArray[np.complex128]) -> NDArray[np.bool_]:
+        x, y = omega.real, omega.imag
+        outside_hole = np.maximum(np.abs(x), np.abs(y)) > self.hole
+        return (x > self.left) & (x <= self.right) & (y >= -self.depth) & (y <= 0) & outside_hole
+
+    @property
+    def outline(self) -> list[complex]:
+        """Corners, counter-clockwise."""
+        left = self.left
+        return [
+            complex(left, -self.depth),
+            complex(self.right, -self.depth),
+            complex(self.right, 0.0),
+            complex(self.hole, 0.0),
+            complex(self.hole, -self.hole),
+            complex(left, -self.hole),
+        ]
+
+
+def count_zeros(region: Region, values: Callable[[NDArray[np.complex128]], NDArray[np.complex128]]) -> int:
+    """Zeros of an analytic function in the region: the winding of its values round the outline.
+
+    ``values(ω)`` may carry any positive factor. Points are added until the argument turns by less
+    than one radian between neighbours; the zeros nearest to the outline decide how many. Raises `CountFailed` where that does not happen.
+    """
+    corners = np.asarray([*region.outline, region.outline[0]])
+    pieces = [
+        a + (b - a) * np.arange(max(2, int(np.ceil(abs(b - a) / _SPACING)))) / max(2, int(np.ceil(abs(b - a) / _SPACING)))
+        for a, b in zip(corners[:-1], corners[1:], strict=True)
+    ]
+    points = np.concatenate(pieces)
+    d = values(points)
+    for _ in range(_ROUNDS):
+        turns = np.angle(np.roll(d, -1) / d)
+        wide = np.abs(turns) > _TURN
+        if not np.any(wide):
+            winding = float(np.sum(turns)) / (2 * np.pi)
+            if not abs(winding - round(winding)) < 1e-6:
+                raise CountFailed("the argument round the outline does not close")
+            return round(winding)
+        # A long turn may hide a full one, and so may its neighbours: refine them too.
+        at = np.flatnonzero(wide | np.roll(wide, 1) | np.roll(wide, -1))
+        gap = (np.roll(points, -1)[at] - points[at]) / (_PARTS + 1)
+        if np.min(np.abs(gap)) < 1e-10:
+            break
+        added = (points[at] + gap * np.arange(1, _PARTS + 1)[:, None]).T
+        points = np.insert(points, np.repeat(at + 1, _PARTS), added.ravel())
+        d = np.insert(d, np.repeat(at + 1, _PARTS), values(added.ravel()))
+    raise CountFailed("the argument of D could not be followed along the outline")
