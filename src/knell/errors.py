@@ -1,7 +1,8 @@
-"""Failures that a user can cause or meet: told in one line, never as a traceback.
+"""Failures that a user can cause or meet: told in one line each, never as a traceback.
 
     KnellError
     ├── InputError      what was asked for does not exist or makes no sense
+    │   └── ConfigError     a config that cannot be run: one line for each problem
     ├── FileError       a file cannot be read or written
     │   └── DamagedFile     a file is not what its checksum or its place says
     └── StaleError      what is on disk no longer belongs to what made it
@@ -12,6 +13,8 @@ is raised is a bug and keeps its traceback.
 
 from __future__ import annotations
 
+from collections.abc import Iterable
+
 
 class KnellError(Exception):
     """An expected failure; its text is one line that names the cause and the remedy."""
@@ -21,6 +24,14 @@ class KnellError(Exception):
 
 class InputError(KnellError):
     """A parameter, option or config that describes no computation."""
+
+
+class ConfigError(InputError):
+    """A config that cannot be run; the text has one line for each problem."""
+
+    def __init__(self, lines: Iterable[str]) -> None:
+        self.lines = list(lines)
+        super().__init__("\n".join(self.lines))
 
 
 class FileError(KnellError):

@@ -18,13 +18,14 @@ SOURCE = "source"
 
 @dataclass
 class Chain:
-    """Every file that ``target`` goes back to, nearest first.
+    """Every file that ``target`` goes back to, nearest first; paths are relative to ``root``.
 
     ``records`` holds None for a file that nothing made, such as the config. ``problems``
     has one line for each link that no longer holds.
     """
 
     target: str
+    root: Path
     records: dict[str, Record | None] = field(default_factory=dict)
     problems: list[str] = field(default_factory=list)
 
@@ -34,11 +35,13 @@ class Chain:
         stages: dict[str, list[str]] = {}
         for file, record in self.records.items():
             stages.setdefault(record.rule if record else SOURCE, []).append(file)
-        return stages
+        sources = stages.pop(SOURCE, [])
+        return {**stages, SOURCE: sources} if sources else stages
 
     @property
     def rebuild(self) -> str:
-        """The one command that makes the target again, from the folder that the paths are relative to."""
+        """The one command line that makes the target again, from the folder one is in."""
+        place = "" if self.root == Path.cwd() else f"cd {shlex.quote(str(self.root))} && "
         command = ["snakemake"]
         for record in filter(None, self.records.values()):
             if record.rule == "resolve_config":
@@ -46,7 +49,7 @@ class Chain:
                     command += ["--configfile", record.parameters["config"]]
                 if record.parameters["overrides"]:
                     command += ["--config", *record.parameters["overrides"]]
-        return shlex.join([*command, "--force", self.target])
+        return place + shlex.join([*command, "--force", self.target])
 
 
 def trace(path: str) -> Chain:
@@ -59,8 +62,8 @@ def trace(path: str) -> Chain:
     if record is None:
         missing = "there is no such file" if not Path(path).exists() else f"has no record ({record_path(path)})"
         raise InputError(f"{path}: {missing}; trace takes a file that the survey made")
-    chain = Chain(record.file)
-    _Tracer(_root(path, record.file), chain).follow()
+    chain = Chain(record.file, _root(path, record.file))
+    _Tracer(chain).follow()
     return chain
 
 
@@ -74,8 +77,8 @@ def _root(path: str, recorded: str) -> Path:
 
 
 class _Tracer:
-    def __init__(self, root: Path, chain: Chain) -> None:
-        self._root = root
+    def __init__(self, chain: Chain) -> None:
+        self._root = chain.root
         self._chain = chain
         self._hashes: dict[str, str | None] = {}
 

@@ -10,7 +10,7 @@ from fractions import Fraction
 from pathlib import Path, PurePosixPath
 from typing import Any
 
-from knell.errors import InputError
+from knell.errors import ConfigError, InputError
 from knell.physics.exact import parse_rational, rational_text
 from knell.survey import exact_yaml
 from knell.survey.exact_yaml import ExactYaml, KeyPath, show_path, show_value
@@ -22,14 +22,6 @@ DEFAULT_REQUIRED_DIGITS = 10
 DEFAULT_WINDOW = Fraction(3, 2)
 # Folders that the default config fills in results/: a config of that name would write into them.
 _TAKEN = ("benchmarks", "cells", "figures", "logs")
-
-
-class ConfigError(InputError):
-    """A config that cannot be run; the text has one line for each problem."""
-
-    def __init__(self, lines: Iterable[str]) -> None:
-        self.lines = list(lines)
-        super().__init__("\n".join(self.lines))
 
 
 @dataclass(frozen=True)

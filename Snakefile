@@ -1,0 +1,25 @@
+# The survey, from one config to a dataset with its evidence.
+#
+#   config ──> search ──> cell (depth × precision) ─┐
+#                    └──> witness ──────────────────┴─> dataset ──> figures ──> provenance
+#
+# Run `snakemake` for config/config.yaml, `snakemake --configfile FILE` for another survey.
+
+
+include: "workflow/rules/common.smk"
+
+
+rule all:
+    input:
+        CONFIG.cell_files(),
+        dataset_file(),
+        figure_files(),
+        provenance_file(),
+
+
+include: "workflow/rules/search.smk"
+include: "workflow/rules/cells.smk"
+include: "workflow/rules/witness.smk"
+include: "workflow/rules/dataset.smk"
+include: "workflow/rules/figures.smk"
+include: "workflow/rules/provenance.smk"

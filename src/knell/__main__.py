@@ -1,0 +1,7 @@
+"""``python -m knell``."""
+
+import sys
+
+from knell.command import main
+
+sys.exit(main())

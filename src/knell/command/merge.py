@@ -1,0 +1,35 @@
+"""``knell merge``: judge the results of every point and write the dataset."""
+
+from __future__ import annotations
+
+import argparse
+
+from knell.command.options import read_config
+from knell.errors import StaleError
+from knell.record.provenance import Making
+from knell.record.source import DATASET, SOLVER, source_hash
+
+DESCRIPTION = "Read every result of the survey, judge the modes and write the dataset."
+
+
+def add_arguments(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--config", required=True, help="the completed config (JSON)")
+    parser.add_argument("--output", required=True, help="the netCDF file to write")
+
+
+def run(arguments: argparse.Namespace) -> None:
+    from knell.survey import dataset, dataset_file
+
+    config = read_config(arguments.config)
+    solver = source_hash(SOLVER)
+    inputs = (arguments.config, *config.cell_files())
+    making = Making.begin("dataset", inputs, {"solver": solver, "source": source_hash(DATASET)})
+    result = dataset.assemble(config)
+    if solver not in result.attrs["source"]:
+        raise StaleError(
+            f"the cells were made by another state of the solver ({result.attrs['source']}) than the one here, "
+            f"{solver}; run snakemake --forcerun search"
+        )
+    result.attrs["record"] = making.id
+    dataset_file.write(result, arguments.output)
+    making.finish(arguments.output)
