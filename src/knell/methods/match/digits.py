@@ -11,8 +11,10 @@ from __future__ import annotations
 
 import cmath
 import math
+from collections import deque
 from collections.abc import Sequence
 from dataclasses import dataclass
+from operator import add
 from typing import Any
 
 from flint import acb, arb, ctx
@@ -29,7 +31,8 @@ _LONGEST_SERIES = 2000
 _SMALL_TERMS = 6
 _ATTEMPTS = 6
 _ROUNDS = 8
-_SEED_OFFSET = 1e-9
+# Second secant point, relative to a seed in doubles and to one that is precise already.
+_ROUGH, _FINE = 1e-9, 1e-15
 
 
 @dataclass(frozen=True)
@@ -85,7 +88,10 @@ def _series(
     zero = acb(0)
     first = 3 - order
     power = x ** (first + order - 2) if first + order - 2 else acb(1)
-    columns: list[tuple[acb, acb, acb]] = []
+    # What multiplies a_{m-i} is quadratic in m: its value at m and two differences make the next ones by additions.
+    weights: list[acb] = []
+    steps: list[acb] = []
+    bends: list[acb] = []
     for i in range(first, length):
         a = p[i] * power if i < len(p) else zero
         b = two_k[i - 1] * power if i - 1 < len(two_k) else zero
@@ -99,25 +105,28 @@ def _series(
             if j < len(at.W):
                 c = c - at.W[j]
             c = c * power
-        columns.append((a, b, c))
+        back = i - first + 1
+        at_m, at_next, at_last = ((m - back) * ((m - order + 1) * a + b) + c for m in (order, order + 1, order + 2))
+        weights.append(at_m)
+        steps.append(at_next - at_m)
+        bends.append(at_last - 2 * at_next + at_m)
         power = power * x
-    lead_p = p[first - 1] * (x ** (first - 1 + order - 2) if order == 1 else acb(1))
+    lead_p = p[first - 1]
     lead_k = two_k[0] if order == 1 else zero
     terms = [acb(seed[0])] if order == 1 else [acb(seed[0]), seed[1] * x]
     value, moment = sum(terms[1:], terms[0]), (zero if order == 1 else terms[1])
+    recent = deque(reversed(terms), maxlen=len(weights))
     small = 0
     for m in range(order, longest):
-        row = m - order + 1  # k + 1
         total = zero
-        for back, (a, b, c) in enumerate(columns, start=1):
-            j = m - back
-            if j < 0:
-                break
-            total += terms[j] * (j * (row * a + b) + c)
-        term = -total / (m * (row * lead_p + lead_k))
-        terms.append(term)
+        for weight, term in zip(weights, recent, strict=False):
+            total += weight * term
+        term = total / (-m * ((m - order + 1) * lead_p + lead_k))
+        recent.appendleft(term)
         value += term
         moment += m * term
+        weights = list(map(add, weights, steps))
+        steps = list(map(add, steps, bends))
         small = small + 1 if bool(abs(term).mid() * m < tolerance) else 0
         if small == _SMALL_TERMS:
             if bool(moment.rad() > 10 * tolerance):
@@ -242,7 +251,8 @@ def _secant(side: _Side, seed: complex | acb, digits: int) -> MatchRun:
     to_sigma = (acb(0, 1) / side.equation.mass).mid()
     start = (acb(seed) * to_sigma).mid()
     goal = 10.0 ** (-digits) * abs(complex(start))
-    a, b = start, (start * (1 + _SEED_OFFSET)).mid()
+    offset = _FINE if isinstance(seed, acb) else _ROUGH
+    a, b = (start * (1 + offset)).mid(), start
     D_a, D_b = wronskian(side, a), wronskian(side, b)
     for _ in range(_ROUNDS):
         if (D_b - D_a).contains(0):

@@ -63,7 +63,8 @@ def count_zeros(region: Region, values: Callable[[NDArray[np.complex128]], NDArr
     """
     corners = np.asarray([*region.outline, region.outline[0]])
     pieces = [
-        a + (b - a) * np.arange(max(2, int(np.ceil(abs(b - a) / _SPACING)))) / max(2, int(np.ceil(abs(b - a) / _SPACING)))
+        a
+        + (b - a) * np.arange(max(2, int(np.ceil(abs(b - a) / _SPACING)))) / max(2, int(np.ceil(abs(b - a) / _SPACING)))
         for a, b in zip(corners[:-1], corners[1:], strict=True)
     ]
     points = np.concatenate(pieces)

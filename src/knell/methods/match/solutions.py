@@ -138,9 +138,7 @@ class Matcher:
             return D
         reference = sigma if scale_at is None else scale_at
         p1 = self.horizon_slope
-        return D * np.exp(
-            log_reciprocal_gamma(1 - 2 * sigma / p1) - _log_scale(1 - 2 * reference / p1)
-        )
+        return D * np.exp(log_reciprocal_gamma(1 - 2 * sigma / p1) - _log_scale(1 - 2 * reference / p1))
 
 
 def _off_poles(sigma: Complexes, p1: float) -> Complexes:

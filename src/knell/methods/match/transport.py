@@ -20,7 +20,9 @@ LEAVING_TERMS = 46
 LEAVING_STIFFNESS = 2.0
 
 
-def longest_step(equation: Equation, roots: Complexes, u: NDArray, largest: NDArray | float, route: MatchRoute) -> NDArray:
+def longest_step(
+    equation: Equation, roots: Complexes, u: NDArray, largest: NDArray | float, route: MatchRoute
+) -> NDArray:
     """The step allowed at ``u``: a fraction of the distance to a singular point, and ``|2σH/p| h <= stiffness``."""
     distance = np.minimum(np.abs(u), np.abs(u - 1))
     for root in roots:
@@ -30,7 +32,13 @@ def longest_step(equation: Equation, roots: Complexes, u: NDArray, largest: NDAr
 
 
 def taylor_step(
-    equation: Equation, sigma: Complexes, u: complex | Complexes, h: complex | Complexes, value: Complexes, slope: Complexes, terms: int
+    equation: Equation,
+    sigma: Complexes,
+    u: complex | Complexes,
+    h: complex | Complexes,
+    value: Complexes,
+    slope: Complexes,
+    terms: int,
 ) -> tuple[Complexes, Complexes]:
     """``φ`` and ``φ_u`` at ``u + h`` from those at ``u``; ``u`` and ``h`` are shared or one per frequency."""
     plain, moment = coefficients(operator_at(equation, u), sigma, h, [value, slope * h], 2, terms)
@@ -92,7 +100,9 @@ def along_each(
         move = np.where(arriving, log_left[active], direction[active] * fraction)
         target_x = np.where(arriving, aim, x[active] * np.exp(move))
         h = target_x - x[active]
-        value[active], slope[active] = taylor_step(equation, sigma[active], u, h, value[active], slope[active], LEAVING_TERMS)
+        value[active], slope[active] = taylor_step(
+            equation, sigma[active], u, h, value[active], slope[active], LEAVING_TERMS
+        )
         x[active] = target_x
         log_left[active] -= move
         active = active[~arriving]
