@@ -1,4 +1,4 @@
-"""The original equation against its definition: V from the mass function by differentiation in r*, and exact identities."""
+"""The original equation against its definition: V from the mass function differentiated in r*, and exact identities."""
 
 from fractions import Fraction
 

@@ -25,7 +25,7 @@ SCHWARZSCHILD = PowerLaw(3, Fraction(0))
     ],
 )
 def test_schwarzschild_axial_modes_of_leaver(ell, re, im):
-    # E. W. Leaver, Proc. R. Soc. A 402, 285 (1985), table 1, 2Mω; quoted from memory, recomputed, ±1 in the sixth decimal
+    # E. W. Leaver, Proc. R. Soc. A 402, 285 (1985), table 1, 2Mω; quoted from memory, recomputed, ±1e-6
     quoted = complex(float(re), float(im))
     run = solve(SCHWARZSCHILD, "axial", ell, quoted / 2, 15)
     assert run.status == "ok"

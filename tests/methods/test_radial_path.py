@@ -1,6 +1,7 @@
 """Paths of the direct integration: steps inside the circles of convergence, no root passed on the wrong side."""
 
 from fractions import Fraction
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -24,7 +25,7 @@ def test_steps_stay_inside_the_circles_of_convergence_and_meet(background, omega
     for centre, spiral in ((0.0, chosen.outer), (geometry.horizon, chosen.inner)):
         points = centre + np.exp(np.array(spiral.knots))
         ends.append(points[-1])
-        for here, there in zip(points, points[1:], strict=False):
+        for here, there in pairwise(points):
             # 0.4, and the 40 bisections of the planner: no slack is needed beyond rounding
             assert abs(there - here) <= 0.4 * geometry.distance(here) * (1 + 1e-9)
     assert abs(ends[0] - ends[1]) < 1e-12 * abs(ends[0])

@@ -44,7 +44,7 @@ class OriginalEquation:
         return 1 - float(self.deformation) * r ** (1 - self.exponent)
 
     def f(self, r: Any) -> Any:
-        """``f(r) = 1 - 2m/r`` for floats and arrays; near the horizon use `tortoise.Tortoise`, which does not cancel."""
+        """``f(r) = 1 - 2m/r`` for floats and arrays; it cancels at the horizon, `Tortoise.f` does not."""
         return 1 - 2 * self.mass(r) / r
 
     def potential_over_f(self, r: Any) -> Any:

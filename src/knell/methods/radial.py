@@ -15,6 +15,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Any
 
 from flint import acb, ctx
@@ -83,7 +84,7 @@ class _Setting:
 
 
 def _carry(series: RadialSeries, points: list[Any], jet: Jet) -> Jet:
-    for here, there in zip(points, points[1:], strict=False):
+    for here, there in pairwise(points):
         jet = series.taylor(here, jet, there - here)
     return jet
 

@@ -11,6 +11,7 @@ import cmath
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 from knell.methods.original import HorizonRoots
 
@@ -157,7 +158,7 @@ def _check_winding(geometry: Geometry, start: complex, end: complex) -> None:
     """
     spiral = _samples(geometry.horizon, start, end)
     for root in geometry.others:
-        change = sum(cmath.phase((b - root) / (a - root)) for a, b in zip(spiral, spiral[1:], strict=False))
+        change = sum(cmath.phase((b - root) / (a - root)) for a, b in pairwise(spiral))
         first = cmath.phase((spiral[0] - root) / (geometry.horizon - root))
         direct = cmath.phase((spiral[-1] - root) / (geometry.horizon - root))
         if abs(first + change - direct) > 1:
@@ -172,7 +173,7 @@ def _lost_bits(geometry: Geometry, omega: complex, start: complex, end: complex)
 
 def _largest_drop(geometry: Geometry, omega: complex, points: Sequence[complex]) -> float:
     level = highest = drop = 0.0
-    for a, b in zip(points, points[1:], strict=False):
+    for a, b in pairwise(points):
         level += 2 * (omega * (b - a) / geometry.f((a + b) / 2)).imag
         highest = max(highest, level)
         drop = max(drop, highest - level)

@@ -59,7 +59,7 @@ class RadialSeries:
         return Jet(value, weighted / step)
 
     def infinity(self, log_r: Any) -> Jet:
-        """Outgoing ``Ψ = e^(iωr) r^(2iω) Σ b_k r^-k``, ``b_0 = 1``, at ``r = exp(log_r)``, which also says on which sheet."""
+        """Outgoing ``Ψ = e^(iωr) r^(2iω) Σ b_k r^-k``, ``b_0 = 1``, at ``r = exp(log_r)`` on the sheet of ``log_r``."""
         n, r = self.equation.exponent, log_r.exp()
         i_omega = _I * self.omega
         exponent = 2 * i_omega

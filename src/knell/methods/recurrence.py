@@ -67,7 +67,7 @@ def summed(
 
 
 def _ring(columns: Sequence[tuple[Any, Any, Any]], leading: Any, step: Any) -> list[acb_mat]:
-    """The matrices ``-(X, Y, Z)_j step^j / c``; in the p-th, column ``s`` belongs to the ``a_i`` with ``i = s mod L``."""
+    """The matrices ``-(X, Y, Z)_j step^j / c``; in the p-th, column ``s`` is that of ``a_i``, ``i = s mod L``."""
     length = len(columns)
     factor = -1 / leading
     scaled = []
