@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,6 +18,7 @@ _SPACING = 0.02
 _TURN = 1.0
 _ROUNDS = 10
 _PARTS = 3
+_FINEST = 1e-10
 
 
 class CountFailed(ArithmeticError):
@@ -59,30 +61,28 @@ def count_zeros(region: Region, values: Callable[[NDArray[np.complex128]], NDArr
     """Zeros of an analytic function in the region: the winding of its values round the outline.
 
     ``values(ω)`` may carry any positive factor. Points are added until the argument turns by less
-    than one radian between neighbours; the zeros nearest to the outline decide how many. Raises `CountFailed` where that does not happen.
+    than one radian between neighbours; the zeros nearest to the outline decide how many. Raises
+    `CountFailed` where that does not happen.
     """
-    corners = np.asarray([*region.outline, region.outline[0]])
-    pieces = [
-        a
-        + (b - a) * np.arange(max(2, int(np.ceil(abs(b - a) / _SPACING)))) / max(2, int(np.ceil(abs(b - a) / _SPACING)))
-        for a, b in zip(corners[:-1], corners[1:], strict=True)
-    ]
-    points = np.concatenate(pieces)
+    points = np.concatenate([_between(a, b) for a, b in pairwise([*region.outline, region.outline[0]])])
     d = values(points)
     for _ in range(_ROUNDS):
         turns = np.angle(np.roll(d, -1) / d)
-        wide = np.abs(turns) > _TURN
+        wide = ~(np.abs(turns) <= _TURN)
         if not np.any(wide):
-            winding = float(np.sum(turns)) / (2 * np.pi)
-            if not abs(winding - round(winding)) < 1e-6:
-                raise CountFailed("the argument round the outline does not close")
-            return round(winding)
+            return round(float(np.sum(turns)) / (2 * np.pi))
         # A long turn may hide a full one, and so may its neighbours: refine them too.
         at = np.flatnonzero(wide | np.roll(wide, 1) | np.roll(wide, -1))
         gap = (np.roll(points, -1)[at] - points[at]) / (_PARTS + 1)
-        if np.min(np.abs(gap)) < 1e-10:
+        if np.min(np.abs(gap)) < _FINEST:
             break
-        added = (points[at] + gap * np.arange(1, _PARTS + 1)[:, None]).T
-        points = np.insert(points, np.repeat(at + 1, _PARTS), added.ravel())
-        d = np.insert(d, np.repeat(at + 1, _PARTS), values(added.ravel()))
+        added = (points[at] + gap * np.arange(1, _PARTS + 1)[:, None]).T.ravel()
+        points = np.insert(points, np.repeat(at + 1, _PARTS), added)
+        d = np.insert(d, np.repeat(at + 1, _PARTS), values(added))
     raise CountFailed("the argument of D could not be followed along the outline")
+
+
+def _between(a: complex, b: complex) -> NDArray[np.complex128]:
+    """Points from ``a`` to ``b``, without ``b``."""
+    pieces = max(2, int(np.ceil(abs(b - a) / _SPACING)))
+    return a + (b - a) * np.arange(pieces) / pieces

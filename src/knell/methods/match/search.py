@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 from knell.methods.match.geometry import MAIN_ROUTE, MatchRoute
 from knell.methods.match.region import Region, count_zeros
 from knell.methods.match.solutions import Matcher
-from knell.methods.match.tiles import Seed, seeds
+from knell.methods.match.tiles import Seed, Values, seeds
 from knell.physics.equation import Equation
 from knell.physics.landmarks import Window
 
@@ -63,7 +63,7 @@ def search(equation: Equation, window: Window, route: MatchRoute = MAIN_ROUTE) -
     return SearchResult(zeros[inside], error[inside], counted)
 
 
-def _polish(found: list[Seed], values: object) -> tuple[Complexes, NDArray[np.float64]]:
+def _polish(found: list[Seed], values: Values) -> tuple[Complexes, NDArray[np.float64]]:
     """Newton for all roots together; the slopes are those of the models, good to many digits already."""
     omega = np.asarray([seed.omega for seed in found], dtype=complex)
     slope = np.asarray([seed.slope for seed in found], dtype=complex)
