@@ -7,7 +7,7 @@ from pathlib import Path
 
 from knell.errors import KnellError
 from knell.record import environment, source
-from knell.record.verify import set_aside_damaged
+from knell.record.verify import check_files
 from knell.survey.config import DEFAULT, ConfigError, load_config, show_overrides
 from knell.survey.layout import CELLS, FIGURE_FORMATS, record_path
 
@@ -59,7 +59,7 @@ FIGURES = sorted(path.stem for path in Path(workflow.basedir, "workflow", "repor
 try:
     CONFIG = load_config(config_file(), OVERRIDES)
     if workflow.is_main_process:
-        for line in set_aside_damaged(products()):
+        for line in check_files(products(), SOLVER):
             print(line, file=sys.stderr)
 except KnellError as error:
     sys.exit(str(error))

@@ -8,6 +8,7 @@ starts hundreds of them. Every expected failure is one line on standard error.
 from __future__ import annotations
 
 import argparse
+import re
 import sys
 from collections.abc import Sequence
 from importlib import import_module
@@ -56,7 +57,7 @@ def main(argv: Sequence[str] | None = None) -> int:
         command = import_module(f"knell.command.{name}")
         parser = Parser(prog=f"knell {name}", description=command.DESCRIPTION)
         command.add_arguments(parser)
-        return command.run(parser.parse_args(rest)) or 0
+        return command.run(parser.parse_args(_join_negatives(rest))) or 0
     except ConfigError as error:
         print(error, file=sys.stderr)
         return error.exit_code
@@ -73,6 +74,17 @@ def main(argv: Sequence[str] | None = None) -> int:
     except KeyboardInterrupt:
         print(f"knell {name}: interrupted", file=sys.stderr)
         return _INTERRUPTED
+
+
+def _join_negatives(arguments: Sequence[str]) -> list[str]:
+    """``--coupling -1/2`` as ``--coupling=-1/2``, since argparse takes ``-1/2`` for an option."""
+    joined: list[str] = []
+    for argument in arguments:
+        if joined and re.fullmatch(r"--[a-z]+", joined[-1]) and re.fullmatch(r"-[\d.][\d.eE/+-]*", argument):
+            joined[-1] += f"={argument}"
+        else:
+            joined.append(argument)
+    return joined
 
 
 def _overview() -> str:

@@ -13,34 +13,42 @@ from knell.survey.jsonfile import file_sha256, write_text
 from knell.survey.layout import record_path
 
 
-def set_aside_damaged(files: Iterable[str]) -> list[str]:
-    """Rename every file whose bytes are not those of its record, so that it is made again.
+def check_files(files: Iterable[str], solver: str) -> list[str]:
+    """Rename every file whose bytes are not those of its record, so that it is made again; say what was found.
 
     A file without a record, or a record without a file, is left to the workflow, which
     makes both again. Nothing is deleted: the damaged file keeps its content under a name
-    ending in ``.damaged``. Returns a line for each. Raises `FileError` if one cannot be
-    read or renamed.
+    ending in ``.damaged``. Returns a line for each, and one that counts the files of another
+    ``solver``. Raises `FileError` if a file cannot be read or renamed.
     """
-    lines = []
+    lines, stale = [], 0
     for file in files:
-        fault = _fault(file)
+        record, fault = _inspect(file)
         if fault:
             for path in (file, record_path(file)):
                 _set_aside(path)
             lines.append(f"{file}: {fault}; set aside as {file}.damaged, to be made again")
+        elif record:
+            stale += record.parameters.get("solver", solver) != solver
+    if stale:
+        lines.append(
+            f"{stale} files were made by another state of the solver; they are made again now, "
+            "or with --forcerun search where snakemake has nothing to do"
+        )
     return lines
 
 
-def _fault(file: str) -> str | None:
+def _inspect(file: str) -> tuple[Record | None, str]:
+    """The record of a file and what is wrong with the two, if anything is."""
     try:
         record = Record.read(file)
     except DamagedFile:
-        return "its record is damaged"
+        return None, "its record is damaged"
     if record is None or not Path(file).exists():
-        return None
+        return record, ""
     if record.file != file:
-        return f"is a copy of {record.file}"
-    return None if file_sha256(file) == record.sha256 else "is not what was written, its hash has changed"
+        return record, f"is a copy of {record.file}"
+    return record, "" if file_sha256(file) == record.sha256 else "has changed since it was written"
 
 
 def _set_aside(path: str) -> None:
