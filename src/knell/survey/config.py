@@ -98,7 +98,7 @@ def load_config(path: str | Path, overrides: Mapping[str, object] | None = None)
 
     source = _read(path)
     replaced = {key: exact_value(value) for key, value in (overrides or {}).items()}
-    values = {**source.value, **replaced}
+    values = _numbers({**source.value, **replaced})
 
     def line(key_path: KeyPath, sentence: str) -> str:
         where = str(path) if key_path and key_path[0] not in source.value else f"{path}:{source.line(key_path)}"
@@ -159,6 +159,16 @@ def _read(path: str | Path) -> ExactYaml:
     if not isinstance(source.value, dict):
         raise ConfigError([f"{path}: must be keys and values, see config/README.md"])
     return source
+
+
+def _numbers(values: dict[str, Any]) -> dict[str, Any]:
+    """The values with numbers in quotes, such as ``'9/10'``, read where a number is wanted."""
+    values = dict(values)
+    if isinstance(values.get("couplings"), list):
+        values["couplings"] = exact_value(values["couplings"])
+    if "window" in values:
+        values["window"] = exact_value(values["window"])
+    return values
 
 
 def _complete(values: Mapping[str, Any], path: str | Path) -> Config:

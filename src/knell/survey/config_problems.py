@@ -34,7 +34,12 @@ def problems(value: Any) -> list[tuple[KeyPath, str]]:
     errors = _Validator(CONFIG).iter_errors(value)
     found = [(path, text) for error in errors for path, text in _sentences(error)]
     order = {key: i for i, key in enumerate(value)} if isinstance(value, dict) else {}
-    return sorted(found, key=lambda item: order.get(item[0][0], len(order)) if item[0] else -1)
+
+    def place(item: tuple[KeyPath, str]) -> tuple[int, list[int]]:
+        path = item[0]
+        return (order.get(path[0], len(order)) if path else -1, [part for part in path if isinstance(part, int)])
+
+    return sorted(found, key=place)
 
 
 def _sentences(error: jsonschema.ValidationError) -> Iterator[tuple[KeyPath, str]]:
