@@ -21,4 +21,5 @@ def run(arguments: argparse.Namespace) -> None:
 
     depth, precision = arguments.depth, arguments.precision
     task = Task.begin("cell", arguments, (arguments.search,), depth=depth, precision=precision)
-    task.finish(solve.cell(task.point, read_search(arguments.search, task), depth, precision))
+    search = read_search(arguments.search, task)
+    task.finish(solve.cell(task.point, search, depth, precision))

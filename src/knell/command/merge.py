@@ -4,10 +4,10 @@ from __future__ import annotations
 
 import argparse
 
-from knell.command.options import read_config
 from knell.errors import StaleError
 from knell.record.provenance import Making
 from knell.record.source import DATASET, SOLVER, source_hash
+from knell.survey.config import read_completed
 
 DESCRIPTION = "Read every result of the survey, judge the modes and write the dataset."
 
@@ -20,7 +20,7 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 def run(arguments: argparse.Namespace) -> None:
     from knell.survey import dataset, dataset_file
 
-    config = read_config(arguments.config)
+    config = read_completed(arguments.config)
     solver = source_hash(SOLVER)
     inputs = (arguments.config, *config.cell_files())
     making = Making.begin("dataset", inputs, {"solver": solver, "source": source_hash(DATASET)})

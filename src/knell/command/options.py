@@ -8,12 +8,11 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
 
-from knell.errors import DamagedFile, InputError, StaleError
+from knell.errors import DamagedFile, StaleError
 from knell.physics.exact import from_slug, parse_rational
 from knell.record.provenance import Making
 from knell.record.source import SOLVER, source_hash
 from knell.survey import jsonfile
-from knell.survey.config import Config
 from knell.survey.points import Point
 
 
@@ -93,16 +92,3 @@ def read_search(path: str, task: Task) -> dict[str, Any]:
     if search["solver"] != task.solver:
         raise StaleError(f"{path}: was made by another state of the solver; run snakemake --force {path}")
     return search
-
-
-def compute(function: Callable[[], dict[str, Any]]) -> dict[str, Any]:
-    """Call a computation; a `ValueError`, its word for parameters without a meaning, becomes an `InputError`."""
-    try:
-        return function()
-    except ValueError as error:
-        raise InputError(str(error)) from error
-
-
-def read_config(path: str) -> Config:
-    """The completed config that ``knell config --output`` wrote. Raises `FileError` or `DamagedFile`."""
-    return Config.from_document(jsonfile.read(path, "config"))

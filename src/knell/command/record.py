@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import argparse
 
-from knell.command.options import read_config
 from knell.record.verify import merge_records
+from knell.survey.config import read_completed
 
 DESCRIPTION = "Check every file of a survey against its record and merge the records, one line of JSON for each file."
 
@@ -17,5 +17,5 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 
 def run(arguments: argparse.Namespace) -> None:
-    config = read_config(arguments.config)
+    config = read_completed(arguments.config)
     merge_records([arguments.config, *config.cell_files(), *arguments.files], arguments.output)

@@ -18,4 +18,5 @@ def run(arguments: argparse.Namespace) -> None:
     from knell.survey import solve
 
     task = Task.begin("witness", arguments, (arguments.search,))
-    task.finish(solve.witness(task.point, read_search(arguments.search, task)))
+    search = read_search(arguments.search, task)
+    task.finish(solve.witness(task.point, search))

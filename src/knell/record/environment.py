@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import json
 import os
-import subprocess
 from dataclasses import asdict, dataclass, field
 from pathlib import Path
 
@@ -64,6 +63,8 @@ def examine(root: Path | None = None) -> Code:
 
 
 def _git(root: Path, *arguments: str) -> str | None:
+    import subprocess
+
     try:
         done = subprocess.run(["git", "-C", str(root), *arguments], capture_output=True, text=True, check=True)
     except (OSError, subprocess.CalledProcessError):

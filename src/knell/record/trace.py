@@ -18,7 +18,7 @@ SOURCE = "source"
 
 @dataclass
 class Chain:
-    """Every file that ``target`` goes back to, nearest first; paths are relative to ``root``.
+    """Every file that ``target`` goes back to, nearest first; paths are relative to ``root``, empty for here.
 
     ``records`` holds None for a file that nothing made, such as the config. ``problems``
     has one line for each link that no longer holds.
@@ -41,7 +41,7 @@ class Chain:
     @property
     def rebuild(self) -> str:
         """The one command line that makes the target again, from the folder one is in."""
-        place = "" if self.root == Path.cwd() else f"cd {shlex.quote(str(self.root))} && "
+        place = "" if self.root == Path() else f"cd {shlex.quote(str(self.root))} && "
         command = ["snakemake"]
         for record in filter(None, self.records.values()):
             if record.rule == "resolve_config":
@@ -68,12 +68,13 @@ def trace(path: str) -> Chain:
 
 
 def _root(path: str, recorded: str) -> Path:
-    """The folder that ``recorded`` is relative to, given where the file really is."""
+    """The folder that ``recorded`` is relative to, given where the file really is; empty if one is in it."""
     actual = Path(path).resolve()
     depth = len(Path(recorded).parts)
     if Path(recorded).is_absolute() or actual.parts[-depth:] != Path(recorded).parts:
-        return Path.cwd()
-    return Path(*actual.parts[:-depth])
+        return Path()
+    root = Path(*actual.parts[:-depth])
+    return Path() if root == Path.cwd() else root
 
 
 class _Tracer:

@@ -12,7 +12,7 @@ from typing import Any
 
 from knell.errors import ConfigError, InputError
 from knell.physics.exact import parse_rational, rational_text
-from knell.survey import exact_yaml
+from knell.survey import exact_yaml, jsonfile
 from knell.survey.exact_yaml import ExactYaml, KeyPath, show_path, show_value
 from knell.survey.layout import CELLS, CellFolder
 from knell.survey.points import Point, grid
@@ -114,6 +114,11 @@ def load_config(path: str | Path, overrides: Mapping[str, object] | None = None)
     if found:
         raise ConfigError(found)
     return config
+
+
+def read_completed(path: str | Path) -> Config:
+    """The config that ``knell config --output`` wrote. Raises `FileError` or `DamagedFile`."""
+    return Config.from_document(jsonfile.read(path, "config"))
 
 
 def parse_overrides(entries: Iterable[str]) -> dict[str, object]:
