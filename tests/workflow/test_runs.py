@@ -1,0 +1,144 @@
+"""The tiny survey from end to end: complete, repeatable, and nothing is computed twice or used damaged."""
+
+from __future__ import annotations
+
+import json
+import re
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import pytest
+
+from knell.command import main
+from knell.survey import jsonfile
+
+if TYPE_CHECKING:
+    from conftest import Workflow
+
+pytestmark = pytest.mark.slow
+
+POINT = "results/cells/window-1_2/axial-l2-n4-k1_2"
+DOWNSTREAM = {"dataset", "provenance", "all"}
+
+
+def of_points(jobs: dict[str, int]) -> dict[str, int]:
+    """The jobs that compute, without dataset, figures and what follows."""
+    return {rule: count for rule, count in jobs.items() if rule in ("search", "cell", "witness")}
+
+
+def test_a_run_makes_everything_with_a_record(finished: Workflow) -> None:
+    results = finished.folder / "results"
+    cells = finished.cells()
+    assert len(cells) == 2 * (2 + 2)
+    for name in cells:
+        kind = re.sub(r"aim-.*", "cell", Path(name).stem)
+        assert jsonfile.read(finished.folder / name, kind)["kind"] == kind
+    lines = (results / "tiny/provenance.jsonl").read_text().splitlines()
+    recorded = {record["file"]: record for record in map(json.loads, lines)}
+    figures = {f"results/tiny/figures/{path.name}" for path in (results / "tiny/figures").glob("*.p??")}
+    assert figures and recorded.keys() == {*cells, *figures, "results/tiny/survey.nc", "results/tiny/config.json"}
+    for name, record in recorded.items():
+        assert record["sha256"] == jsonfile.file_sha256(finished.folder / name)
+    solvers = {record["parameters"].get("solver") for record in recorded.values() if record["rule"] == "cell"}
+    assert len(solvers) == 1
+    assert {json.loads(text)["solver"] for text in cells.values()} == solvers
+
+
+def test_a_second_run_from_nothing_gives_the_same_bytes(finished: Workflow, workflow: Workflow) -> None:
+    workflow.complete()
+    assert workflow.cells() == finished.cells()
+    assert workflow.dataset == finished.dataset
+    for path in (finished.folder / "results/tiny/figures").glob("*.p??"):
+        assert (workflow.folder / path.relative_to(finished.folder)).read_bytes() == path.read_bytes()
+
+
+def test_every_figure_can_be_traced(
+    finished: Workflow, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.chdir(finished.folder)
+    for path in sorted(Path("results/tiny/figures").glob("*.p??")):
+        assert main(["trace", str(path)]) == 0
+        text = capsys.readouterr().out
+        assert re.search(r"^tiny.yaml +source$", text, re.MULTILINE)
+        assert text.splitlines()[-1] == f"rebuild: snakemake --configfile tiny.yaml --force {path}"
+
+
+@pytest.mark.parametrize("damage", ["altered", "truncated", "emptied", "replaced"])
+def test_a_damaged_cell_is_set_aside_and_computed_again(copied: Workflow, damage: str) -> None:
+    before, dataset = copied.cells(), copied.dataset
+    cell = copied.folder / POINT / "aim-N40-P30.json"
+    data = cell.read_bytes()
+    other = (cell.parent / "aim-N60-P30.json").read_bytes()
+    cell.write_bytes(
+        {
+            "altered": re.sub(rb'"re": "0\.3', b'"re": "0.4', data, count=1),
+            "truncated": data[: len(data) // 2],
+            "emptied": b"",
+            "replaced": other,
+        }[damage]
+    )
+    assert cell.read_bytes() != data
+    code, text = copied.run()
+    assert code == 0, text
+    assert f"{POINT}/aim-N40-P30.json: has changed since it was written; set aside as" in text
+    cell.with_name("aim-N40-P30.json.damaged").unlink()
+    assert copied.cells() == before
+    assert copied.dataset == dataset
+    assert copied.jobs() == {}
+
+
+def test_a_deleted_cell_is_computed_again(copied: Workflow) -> None:
+    before = copied.cells()
+    (copied.folder / POINT / "aim-N40-P30.json").unlink()
+    assert of_points(copied.jobs()) == {"cell": 1}
+    assert copied.complete().cells() == before
+
+
+def test_a_damaged_dataset_is_made_again(copied: Workflow) -> None:
+    dataset = copied.dataset
+    path = copied.folder / "results/tiny/survey.nc"
+    path.write_bytes(dataset[:1000])
+    jobs = copied.jobs()
+    assert of_points(jobs) == {} and DOWNSTREAM <= jobs.keys()
+    assert copied.complete().dataset == dataset
+
+
+def test_a_wider_grid_computes_only_what_is_new(copied: Workflow) -> None:
+    before = copied.cells()
+    text = copied.config.read_text()
+    copied.config.write_text(text.replace("couplings: [1/2]", "couplings: [1/4, 1/2]"))
+    assert of_points(copied.jobs()) == {"search": 1, "cell": 2, "witness": 1}
+    copied.config.write_text(text.replace("depths: [40, 60]", "depths: [40, 50, 60]"))
+    assert of_points(copied.jobs()) == {"cell": 2}
+    after = copied.complete().cells()
+    assert len(after) == len(before) + 2 and before.items() <= after.items()
+
+
+def test_another_config_shares_the_cells(copied: Workflow) -> None:
+    text = copied.config.read_text()
+    (copied.folder / "other.yaml").write_text(text.replace("required_digits: 6", "required_digits: 7"))
+    assert of_points(copied.jobs("--configfile", "other.yaml")) == {}
+    code, printed = copied.run("--configfile", "other.yaml")
+    assert code == 0, printed
+    assert (copied.folder / "results/other/survey.nc").exists()
+    assert copied.jobs() == {}
+
+
+def test_an_edited_comment_in_the_config_recomputes_nothing(copied: Workflow) -> None:
+    dataset = copied.dataset
+    copied.config.write_text(copied.config.read_text() + "# a remark\n")
+    assert of_points(copied.jobs()) == {}
+    assert copied.complete().dataset == dataset
+
+
+def test_a_point_that_fails_does_not_take_the_others_with_it(workflow: Workflow) -> None:
+    """Where the cells of one point belong, there is a file: they cannot be written."""
+    blocked = workflow.folder / "results/cells/window-1_2/axial-l2-n4-k1_2"
+    blocked.parent.mkdir(parents=True)
+    blocked.write_text("in the way")
+    code, text = workflow.run()
+    assert code == 1 and "axial-l2-n4-k1_2" in text
+    others = [name for name in workflow.cells() if "schwarzschild" in name]
+    assert len(others) == 4
+    blocked.unlink()
+    assert workflow.complete().dataset
