@@ -124,3 +124,9 @@ def synthetic_survey(tmp_path: Path) -> Callable[..., SyntheticSurvey]:
         return SyntheticSurvey(tmp_path, edits, **changes)
 
     return make
+
+
+@pytest.fixture(name="true_frequency")
+def _true_frequency() -> Callable[[Point, int], tuple[Decimal, Decimal]]:
+    """What the synthetic survey's methods converge to."""
+    return true_frequency

@@ -68,7 +68,8 @@ def agreement(a: Frequency, b: Frequency) -> float:
 def rounded(value: Frequency, digits: float) -> Frequency:
     """``value`` with both parts rounded to the last decimal place that ``digits`` of ``|value|`` reach.
 
-    Empty strings when there is no whole digit. Plain decimals, no exponents.
+    Never coarser than whole numbers; empty strings when there is no whole digit. Plain decimals,
+    no exponents.
     """
     if digits < 1:
         return Frequency("", "")

@@ -9,17 +9,19 @@ next depth, ``aim_precision`` the two most precise runs of the deepest depth tha
 ``aim_tilt`` a run with the same run on a second, differently tilted contour. The match's and
 the spectral method's values are the most precise ones.
 
-*Convergence* is the error a method admits: for AIM the agreement of its two deepest runs, in
-the precision column where that is largest (tilted runs: of the two deepest tilted ones; in a
-survey of one depth: of the two tilts); for the match that of two precisions; for the spectral
-method that of two tilts. The best column, because truncation is an honest excuse and rounding
-is not: a cell that claims more precision than it had agrees worse with its neighbours than
-the other column's convergence allows.
+*Convergence* is the error a run admits. For the match it is the agreement of two precisions, for
+the spectral method that of two tilts. For AIM at one depth it is the best agreement of any run
+of that depth or of a shallower one with the next depth, with the other contour or with another
+method: truncation is an honest excuse, but deepening does not make it worse, and rounding is
+none. A cell that had less precision than it says agrees worse with its neighbours than their
+convergence allows.
+It is unknown where AIM has neither a second depth nor a second tilt, because the agreement
+with another method must not excuse itself.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -79,8 +81,8 @@ class Evidence:
     @property
     def best_aim(self) -> Frequency | None:
         """The deepest AIM run that is ok, at its highest precision."""
-        ladder = _ladder(self.aim, _plain)
-        return ladder[0][2] if ladder else None
+        ladder = _ladder((run.depth, run.precision, run.plain) for run in self.aim)
+        return ladder[0].value if ladder else None
 
     @property
     def best_match(self) -> Frequency | None:
@@ -102,76 +104,91 @@ class Link:
 
 def compare(evidence: Evidence) -> dict[str, Link]:
     """Every agreement the evidence allows, by name in the order of `AGREEMENTS`."""
-    aim, match, spectral = evidence.best_aim, evidence.best_match, evidence.spectral.value
-    tilt = _digits(*_two_tilts(evidence.aim))
-    plain = _convergence(evidence.aim, _plain)
-    plain = tilt if plain is None else plain
+    match, spectral = evidence.best_match, evidence.spectral.value
     precise = _digits(evidence.match.value, evidence.match_more_precise.value)
-    tilts = _digits(spectral, evidence.spectral_tilted.value)
+    tilts = _digits(evidence.spectral_tilted.value, spectral)
+    plain = _ladder((run.depth, run.precision, run.plain) for run in evidence.aim)
+    tilted = _ladder((run.depth, run.precision, run.tilted) for run in evidence.aim)
+    tilt_pair = _same_cell(tilted, plain)
+    expected = _expected(plain, tilted, (match, spectral))
+    expected_tilted = _expected(tilted, plain, (match, spectral))
+
+    def rungs(pair: tuple[_Rung, _Rung] | None, first: Mapping[int, float] = expected) -> Link | None:
+        return pair and _link(pair[0].value, pair[1].value, first.get(pair[0].depth), expected.get(pair[1].depth))
+
+    def best(other: Frequency | None, convergence: float | None) -> Link | None:
+        return _link(plain[0].value, other, expected.get(plain[0].depth), convergence) if plain else None
+
     links = {
-        "aim_depth": _link(*_two_deepest(evidence.aim), plain),
-        "aim_precision": _link(*_two_most_precise(evidence.aim), plain),
-        "aim_tilt": _link(*_two_tilts(evidence.aim), plain, _convergence(evidence.aim, _tilted)),
-        "aim_spectral": _link(aim, spectral, plain, tilts),
-        "aim_match": _link(aim, match, plain, precise),
+        "aim_depth": rungs(_two_deepest(plain)),
+        "aim_precision": rungs(_two_most_precise(plain)),
+        "aim_tilt": rungs(tilt_pair, expected_tilted),
+        "aim_spectral": best(spectral, tilts),
+        "aim_match": best(match, precise),
         "match_path": _link(evidence.match_other_path.value, evidence.match.value, precise),
         "match_precision": _link(evidence.match.value, evidence.match_more_precise.value),
         "match_spectral": _link(spectral, match, precise, tilts),
         "spectral_tilt": _link(evidence.spectral_tilted.value, spectral),
     }
-    return {name: link for name, link in links.items() if link is not None}
+    return {name: link for name, link in links.items() if link}
 
 
-def _plain(run: AimRun) -> Run:
-    return run.plain
+@dataclass(frozen=True)
+class _Rung:
+    """One AIM run that is ok, on one contour."""
+
+    depth: int
+    precision: int
+    value: Frequency
 
 
-def _tilted(run: AimRun) -> Run:
-    return run.tilted
+def _ladder(runs: Iterable[tuple[int, int, Run]]) -> list[_Rung]:
+    """The runs that are ok, best first."""
+    rungs = [_Rung(depth, precision, run.value) for depth, precision, run in runs if run.value is not None]
+    return sorted(rungs, key=lambda rung: (rung.depth, rung.precision), reverse=True)
 
 
-def _ladder(runs: Iterable[AimRun], contour: Callable[[AimRun], Run]) -> list[tuple[int, int, Frequency]]:
-    """Depth, precision and value of the runs that are ok, best first."""
-    values = [(run.depth, run.precision, contour(run).value) for run in runs]
-    return sorted(((d, p, v) for d, p, v in values if v is not None), key=lambda x: x[:2], reverse=True)
+def _two_deepest(ladder: list[_Rung]) -> tuple[_Rung, _Rung] | None:
+    """The next depth's rung, at the best one's precision if that is ok, and the best."""
+    shallower = [rung for rung in ladder if rung.depth < ladder[0].depth]
+    if not shallower:
+        return None
+    next_depth = [rung for rung in shallower if rung.depth == shallower[0].depth]
+    same_column = [rung for rung in next_depth if rung.precision == ladder[0].precision]
+    return (same_column or next_depth)[0], ladder[0]
 
 
-def _two_deepest(runs: Iterable[AimRun]) -> tuple[Frequency | None, Frequency | None]:
-    """The next depth's value, at the best run's precision if that is ok, and the best run's."""
-    ladder = _ladder(runs, _plain)
-    if not ladder:
-        return None, None
-    depth, precision, best = ladder[0]
-    shallower = [x for x in ladder if x[0] < depth]
-    next_depth = [x for x in shallower if x[0] == shallower[0][0]]
-    same_column = [x for x in next_depth if x[1] == precision] or next_depth
-    return (same_column[0][2] if same_column else None), best
+def _two_most_precise(ladder: list[_Rung]) -> tuple[_Rung, _Rung] | None:
+    """The less and the more precise rung of the deepest depth that has both."""
+    return next(((less, more) for more, less in pairwise(ladder) if more.depth == less.depth), None)
 
 
-def _two_most_precise(runs: Iterable[AimRun]) -> tuple[Frequency | None, Frequency | None]:
-    """The less and the more precise value at the deepest depth that has both."""
-    ladder = _ladder(runs, _plain)
-    for more, less in pairwise(ladder):
-        if more[0] == less[0]:
-            return less[2], more[2]
-    return None, None
+def _same_cell(tilted: list[_Rung], plain: list[_Rung]) -> tuple[_Rung, _Rung] | None:
+    """The tilted and the plain rung of the best cell that has both."""
+    others = {(rung.depth, rung.precision): rung for rung in tilted}
+    pairs = ((others.get((rung.depth, rung.precision)), rung) for rung in plain)
+    return next(((other, rung) for other, rung in pairs if other is not None), None)
 
 
-def _two_tilts(runs: Iterable[AimRun]) -> tuple[Frequency | None, Frequency | None]:
-    """The tilted and the plain value of the best run that has both."""
-    both = [run for run in runs if run.plain.value and run.tilted.value]
-    if not both:
-        return None, None
-    best = max(both, key=lambda run: (run.depth, run.precision))
-    return best.tilted.value, best.plain.value
+def _expected(ladder: list[_Rung], turned: list[_Rung], witnesses: Iterable[Frequency | None]) -> dict[int, float]:
+    """Digits each depth of a ladder can be expected to have; empty where AIM knows nothing of its own error.
 
-
-def _convergence(runs: Iterable[AimRun], contour: Callable[[AimRun], Run]) -> float | None:
-    """The largest agreement of the two deepest runs over the precision columns; `None` without two depths."""
-    columns: dict[int, list[Frequency]] = {}
-    for _, precision, value in _ladder(runs, contour):
-        columns.setdefault(precision, []).append(value)
-    return max((agreement(column[1], column[0]) for column in columns.values() if len(column) > 1), default=None)
+    ``turned`` is the ladder on the other contour.
+    """
+    depths = sorted({rung.depth for rung in ladder})
+    other_contour = {(rung.depth, rung.precision): rung.value for rung in turned}
+    if len(depths) < 2 and not any((rung.depth, rung.precision) in other_contour for rung in ladder):
+        return {}
+    others = [value for value in witnesses if value is not None]
+    expected, best = {}, 0.0
+    for depth, deeper in zip(depths, [*depths[1:], None], strict=True):
+        beyond = others + [rung.value for rung in ladder if rung.depth == deeper]
+        for rung in (rung for rung in ladder if rung.depth == depth):
+            turned_value = other_contour.get((rung.depth, rung.precision))
+            compared = beyond if turned_value is None else [*beyond, turned_value]
+            best = max([best, *(agreement(rung.value, other) for other in compared)])
+        expected[depth] = best
+    return expected
 
 
 def _digits(a: Frequency | None, b: Frequency | None) -> float | None:

@@ -37,8 +37,8 @@ SLACK = 1.5
 SAME_MODE = 4.0
 # A genuine mode keeps at least three digits when the tilt or the path changes; a root of the cut keeps none.
 MOVED = 3.0
-# The search in doubles is good to 1e-8, a surface gravity in doubles to 1e-13.
-_LOCATED = (8.0, 13.0)
+# The search writes eight decimals; a surface gravity in doubles is good to 1e-13.
+_LOCATED = (7.0, 13.0)
 
 _OWN = {"aim": ("aim_depth", "aim_precision", "aim_tilt"), "match": ("match_path", "match_precision")}
 _CROSS = {"aim": ("aim_spectral", "aim_match"), "match": ("match_spectral", "aim_match")}
@@ -96,9 +96,11 @@ def judge(
     bases = {basis: _roles(links, basis, required_digits) for basis in BASES}
     basis = _choose(links, bases, evidence, required_digits)
     value = _value(evidence, basis)
-    seen = agreement(evidence.search, value)
-    links["search"] = Link(seen, seen, whole=False)
-    roles = bases[basis] | {"search": "beside" if seen >= SAME_MODE else "contradiction"}
+    roles = bases[basis]
+    if value is not evidence.search:
+        seen = agreement(evidence.search, value)
+        links["search"] = Link(seen, seen, whole=False)
+        roles["search"] = "beside" if seen >= SAME_MODE else "contradiction"
     counted = _counted(links, roles)
     digits = min(counted, default=0.0)
     enough = len(counted) >= 2 and digits >= required_digits
