@@ -116,12 +116,12 @@ def _aim(point: Point, index: int, depth: int, precision: int) -> dict[str, Any]
     return head | _run(point, index, digits) | {"tilted": _run(point, index, digits - 0.7)}
 
 
-@pytest.fixture
-def synthetic_survey(tmp_path: Path) -> Callable[..., SyntheticSurvey]:
-    """Make a synthetic survey in a temporary folder: ``synthetic_survey(edits, **config)``."""
+@pytest.fixture(scope="session")
+def synthetic_survey(tmp_path_factory: pytest.TempPathFactory) -> Callable[..., SyntheticSurvey]:
+    """Make a synthetic survey, each in a folder of its own: ``synthetic_survey(edits, **config)``."""
 
     def make(edits: Mapping[tuple[str, str], Edit] | None = None, **changes: Any) -> SyntheticSurvey:
-        return SyntheticSurvey(tmp_path, edits, **changes)
+        return SyntheticSurvey(tmp_path_factory.mktemp("survey"), edits, **changes)
 
     return make
 

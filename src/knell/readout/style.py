@@ -107,5 +107,13 @@ def save(figure: Figure, path: str | Path, title: str, record: str = "") -> None
     else:
         raise ValueError(f"{path}: figures are written as .png or .pdf")
     metadata = {key: value for key, value in metadata.items() if value != ""}
+    _fix_layout(figure)
     with jsonfile.replacing(path) as temporary:
         figure.savefig(temporary, metadata=metadata)
+
+
+def _fix_layout(figure: Figure) -> None:
+    """Lay the figure out once, so that every format has the same layout and none pays for it again."""
+    if figure.get_layout_engine() is not None:
+        figure.draw_without_rendering()
+        figure.set_layout_engine("none")
