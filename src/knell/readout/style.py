@@ -16,6 +16,7 @@ import matplotlib as mpl
 import numpy as np
 from matplotlib.colors import ListedColormap
 from matplotlib.figure import Figure
+from matplotlib.layout_engine import ConstrainedLayoutEngine
 
 from knell import __version__
 from knell.survey import jsonfile
@@ -114,6 +115,6 @@ def save(figure: Figure, path: str | Path, title: str, record: str = "") -> None
 
 def _fix_layout(figure: Figure) -> None:
     """Lay the figure out once, so that every format has the same layout and none pays for it again."""
-    if figure.get_layout_engine() is not None:
+    if isinstance(figure.get_layout_engine(), ConstrainedLayoutEngine):
         figure.draw_without_rendering()
         figure.set_layout_engine("none")
