@@ -6,7 +6,7 @@ from fractions import Fraction
 
 import mpmath
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from knell.survey.agreement import Frequency, agreement, carried, rounded
@@ -17,9 +17,11 @@ SIGN = st.sampled_from((1, -1))
 
 def text(numerator: int) -> str:
     """A number of 30 decimal places."""
-    return f"{'-' if numerator < 0 else ''}0.{abs(numerator):030d}"
+    whole, decimals = divmod(abs(numerator), 10**30)
+    return f"{'-' if numerator < 0 else ''}{whole}.{decimals:030d}"
 
 
+@settings(deadline=None, max_examples=60)
 @given(PART, PART, st.integers(1, 28), SIGN, st.booleans())
 def test_agreement_is_minus_the_logarithm_of_the_relative_difference(
     re: int, im: int, digits: int, sign: int, real: bool
@@ -71,6 +73,7 @@ def test_agreement_with_zero_is_refused() -> None:
         agreement(Frequency("0.1", "0.1"), Frequency("0", "0.0"))
 
 
+@settings(deadline=None, max_examples=60)
 @given(PART, PART, st.integers(1, 29))
 def test_rounded_keeps_the_agreed_digits_and_no_more(re: int, im: int, digits: int) -> None:
     value = Frequency(text(re), text(-im))

@@ -6,7 +6,7 @@ from dataclasses import replace
 from decimal import Decimal, localcontext
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from knell.survey.agreement import Frequency
@@ -239,6 +239,7 @@ LADDER = st.lists(st.tuples(RUN, RUN), max_size=4).map(
 )
 
 
+@settings(deadline=None, max_examples=60)
 @given(LADDER, st.fixed_dictionaries({name: RUN for name in WITNESSES}))
 def test_settled_means_at_least_two_agreements_and_all_that_count_suffice(
     aim: tuple[AimRun, ...], witnesses: dict[str, Run]
