@@ -28,6 +28,7 @@ _SPECIAL = 1e-7
 
 MATCH_DIGITS = 24
 MORE_PRECISE_DIGITS = 32
+SPECTRAL_DIGITS = 16
 WRITTEN_DIGITS = 32
 
 PRINCIPAL, NEAR_AXIS, SPECIAL = "principal", "near-axis", "special"
@@ -113,10 +114,15 @@ def _decimal(x: float) -> str:
 
 def witness(point: Point, search_document: Mapping[str, Any]) -> dict[str, Any]:
     """The modes of a search by the match over balls (two routes, two precisions) and by the spectral method."""
+    from knell.methods import spectral_refine as spectral
     from knell.methods.match.digits import refine
     from knell.methods.match.geometry import OTHER_ROUTE
+    from knell.methods.spectral_path import OTHER_TILT, TILT
 
     background, field, ell = point.background(), point.field, point.ell
+    problem, tilted = (
+        spectral.SpectralProblem(background, field, ell, SPECTRAL_DIGITS, tilt) for tilt in (TILT, OTHER_TILT)
+    )
     modes = []
     for mode in search_document["modes"]:
         seed = _seed(mode)
@@ -126,6 +132,8 @@ def witness(point: Point, search_document: Mapping[str, Any]) -> dict[str, Any]:
             "match": match,
             "match_other_path": refine(background, field, ell, better, MATCH_DIGITS, OTHER_ROUTE),
             "match_more_precise": refine(background, field, ell, better, MORE_PRECISE_DIGITS),
+            "spectral": spectral.refine(problem, seed),
+            "spectral_tilted": spectral.refine(tilted, seed),
         }
         modes.append(
             {
