@@ -43,7 +43,7 @@ def encloses(n: int, coupling: Fraction, low: Fraction, high: Fraction) -> bool:
     return -1 < low and high < Fraction(1, n - 1) and excess(low) < 0 < excess(high)
 
 
-@settings(deadline=None, max_examples=60)
+@settings(deadline=None, max_examples=30)
 @given(exponents, couplings, st.integers(min_value=40, max_value=400))
 def test_q_is_enclosed_and_tight(n: int, coupling: Fraction, bits: int) -> None:
     ball = PowerLaw(n, coupling).q(bits)
@@ -66,7 +66,7 @@ def test_q_at_the_edges_of_the_family(n: int, coupling: Fraction) -> None:
     assert high - low < abs(low) * Fraction(2) ** -199
 
 
-@settings(deadline=None, max_examples=60)
+@settings(deadline=None, max_examples=30)
 @given(exponents, st.fractions(min_value=0, max_value=1, max_denominator=10**6), st.booleans())
 def test_a_rational_q_comes_back(n: int, fraction: Fraction, negative: bool) -> None:
     """``q(κ(q)) = q`` on both sides of Schwarzschild, up to the extremal end."""

@@ -172,7 +172,7 @@ def black_hole_polynomials(draw: st.DrawFn) -> list[Fraction]:
     return trimmed(f)
 
 
-@settings(deadline=None, max_examples=60)
+@settings(deadline=None, max_examples=30)
 @given(black_hole_polynomials(), st.sampled_from(FIELDS))
 def test_p_q_is_one_minus_h_squared_identically(f: list[Fraction], field: str) -> None:
     equation = regularised(f, field, 2)
@@ -181,7 +181,7 @@ def test_p_q_is_one_minus_h_squared_identically(f: list[Fraction], field: str) -
     assert trimmed(product) == trimmed([(k == 0) - x for k, x in enumerate(square)])
 
 
-@settings(deadline=None, max_examples=60)
+@settings(deadline=None, max_examples=30)
 @given(black_hole_polynomials())
 def test_u_squared_divides_with_zero_remainder(f: list[Fraction]) -> None:
     """``4 (1 - f₁u)(1 - f (1 - f₁u))`` multiplied out in full starts at ``u²``, and the rest of it is ``Q``."""
@@ -192,7 +192,7 @@ def test_u_squared_divides_with_zero_remainder(f: list[Fraction]) -> None:
     assert trimmed(numerator[2:]) == trimmed(list(regularised(f, "axial", 2).Q))
 
 
-@settings(deadline=None, max_examples=60)
+@settings(deadline=None, max_examples=30)
 @given(black_hole_polynomials())
 def test_h_is_minus_one_at_infinity_and_one_on_every_root_of_f(f: list[Fraction]) -> None:
     """``f | H - 1``: to each root's multiplicity, complex roots included."""
@@ -258,7 +258,7 @@ def test_imposing_the_zeros_changes_nothing_but_rounding(coupling: str) -> None:
             assert all(a.overlaps(b) for a, b in zip(getattr(imposed, part), getattr(plain, part), strict=True))
 
 
-@settings(deadline=None, max_examples=40)
+@settings(deadline=None, max_examples=25)
 @given(black_hole_polynomials(), small, small, st.sampled_from([1, -1]))
 def test_local_equation_is_the_equation_about_another_point(
     f: list[Fraction], centre: Fraction, x: Fraction, direction: int

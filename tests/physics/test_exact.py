@@ -60,20 +60,20 @@ def test_anything_else_is_refused_and_named(written: object) -> None:
         parse_rational(written)
 
 
-@settings(deadline=None, max_examples=50)
+@settings(deadline=None, max_examples=30)
 @given(rationals)
 def test_text_round_trip(value: Fraction) -> None:
     assert parse_rational(rational_text(value)) == value
 
 
-@settings(deadline=None, max_examples=50)
+@settings(deadline=None, max_examples=30)
 @given(st.floats(allow_nan=False, allow_infinity=False))
 def test_a_float_is_read_as_the_shortest_decimal_that_prints_it(value: float) -> None:
     assert float(parse_rational(value)) == value
     assert parse_rational(value) == parse_rational(repr(value))
 
 
-@settings(deadline=None, max_examples=50)
+@settings(deadline=None, max_examples=30)
 @given(rationals)
 def test_slug_round_trip(value: Fraction) -> None:
     slug = rational_slug(value)
@@ -81,7 +81,7 @@ def test_slug_round_trip(value: Fraction) -> None:
     assert set(slug) <= set("m_0123456789")  # safe in a file name and free of the separators '-', '.' and '/'
 
 
-@settings(deadline=None, max_examples=50)
+@settings(deadline=None, max_examples=30)
 @given(rationals, rationals)
 def test_slugs_of_different_rationals_differ(a: Fraction, b: Fraction) -> None:
     assert (rational_slug(a) == rational_slug(b)) == (a == b)

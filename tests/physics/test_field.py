@@ -25,7 +25,7 @@ def test_schwarzschild_potentials(ell: int) -> None:
         assert w + [0] * (2 - len(w)) == expected
 
 
-@settings(deadline=None, max_examples=50)
+@settings(deadline=None, max_examples=30)
 @given(st.lists(small, min_size=1, max_size=6), st.fractions(min_value="1/2", max_value=9, max_denominator=20))
 def test_potentials_from_the_mass_function(tail: list[Fraction], r: Fraction) -> None:
     """``m(r) = -½ Σ f_k r^(1-k)``; then ``V r²/f`` of each field from ``m`` and ``m'`` alone.

@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 
 from knell.physics import polynomial
 
-few = settings(deadline=None, max_examples=40)
+few = settings(deadline=None, max_examples=25)
 rationals = st.fractions(min_value=-9, max_value=9, max_denominator=50)
 polynomials = st.lists(rationals, min_size=1, max_size=7)
 
