@@ -61,14 +61,16 @@ class SyntheticSurvey:
             "solver": _SOLVER,
             "window": {"re_max": "7/10", "depth": str(self.config.window), "excluded": "1/10"},
         }
+        near_axis = [{"family": "near-axis", "index": 0, "re": "2e-5", "im": "-0.61"}]
+        listed = [_mode("principal", i, _run(point, i, 14)) for i in modes]
+        listed += [] if point.is_schwarzschild else near_axis
         search = {
             "kind": "search",
             "status": "ok",
             "reason": "",
-            "counted": len(modes) + 1,
-            "found": len(modes) + 1,
-            "modes": [_mode("principal", i, _run(point, i, 14)) for i in modes]
-            + ([] if point.is_schwarzschild else [{"family": "near-axis", "index": 0, "re": "2e-5", "im": "-0.61"}]),
+            "counted": len(listed) + 1,
+            "found": len(listed) + 1,
+            "modes": listed,
             "continued": [{"re": "-0.1", "im": "-0.9"}],
             "undetermined": [],
         }

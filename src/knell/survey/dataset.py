@@ -144,9 +144,9 @@ def _store_holes(arrays: Arrays, config: Config) -> None:
 def _store_point(arrays: Arrays, place: Index, result: PointResults) -> None:
     arrays["search_status"][place] = schema.SEARCH_FLAGS[result.status]
     arrays["window_re_max"][place] = float(parse_rational(result.window["re_max"]))
-    if result.counted is not None:
-        arrays["window_count"][place] = result.counted
-        arrays["window_found"][place] = result.found
+    if result.zeros is not None:
+        for name in ("count", "found", "continued", "undetermined"):
+            arrays[f"window_{name}"][place] = getattr(result.zeros, name)
 
 
 def _store_overtones(arrays: Arrays, prefix: str, place: Index, config: Config, modes: Judged) -> None:

@@ -62,7 +62,7 @@ def _encoding(name: str, variable: xr.Variable) -> dict[str, Any]:
         # Text of one width compresses; netCDF's own strings do not.
         del settings["_FillValue"]
         chunks = (*chunks, max(1, *(len(text.encode()) for text in variable.values.flat)))
-        settings |= {"dtype": "S1", "char_dim_name": f"{name}_width"}
+        settings["dtype"] = "S1"
     return settings | {"zlib": True, "complevel": 5, "shuffle": True, "chunksizes": chunks}
 
 

@@ -110,6 +110,8 @@ def variables() -> dict[str, Variable]:
         "search_status": flags(POINT, "status of the search", ("not_surveyed", *SEARCH_FLAGS)),
         "window_count": number(POINT, "zeros counted in the window by winding, the continued sheet included"),
         "window_found": number(POINT, "zeros found in the window, the continued sheet included"),
+        "window_continued": number(POINT, "zeros of the continued sheet in the window: Re M omega below 0, no modes"),
+        "window_undetermined": number(POINT, "zeros so close to the axis that their side could not be decided"),
         "window_re_max": number(POINT, "right edge of the window in Re M omega"),
         "window_depth": number((), "depth of the window: the largest -Im M omega"),
         "window_excluded": number((), "half-side of the square about M omega = 0 that the window leaves out"),

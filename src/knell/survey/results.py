@@ -23,17 +23,25 @@ ModeKey = tuple[str, int]
 
 
 @dataclass(frozen=True)
+class Zeros:
+    """Zeros in a window: counted by winding, found, and those found that are no modes or may be none."""
+
+    count: int
+    found: int
+    continued: int
+    undetermined: int
+
+
+@dataclass(frozen=True)
 class PointResults:
     """What the survey knows of one point.
 
-    ``modes`` maps (family, index) to its evidence, in the order of the search; it is empty
-    when the search failed. ``counted`` is the winding number of the window, the continued sheet
-    included, ``found`` the zeros located there; both None when the search failed.
+    ``modes`` maps (family, index) to its evidence, in the order of the search; it is empty, and
+    ``zeros`` is None, when the search failed.
     """
 
     status: str
-    counted: int | None
-    found: int | None
+    zeros: Zeros | None
     window: Mapping[str, str]
     solver: str
     modes: Mapping[ModeKey, Evidence]
@@ -58,8 +66,7 @@ def read_point(folder: CellFolder, ladder: Iterable[tuple[int, int]]) -> PointRe
     ok = search["status"] == "ok"
     return PointResults(
         status=search["status"],
-        counted=search["counted"] if ok else None,
-        found=search["found"] if ok else None,
+        zeros=_zeros(search) if ok else None,
         window=search["window"],
         solver=search["solver"],
         modes={
@@ -84,6 +91,10 @@ def _read(path: str, kind: str, folder: CellFolder, search: Mapping[str, Any] | 
         if document["window"] != search["window"]:
             raise DamagedFile(f"{path}: belongs to another window than {folder.search}; {_REMEDY}")
     return document
+
+
+def _zeros(search: Mapping[str, Any]) -> Zeros:
+    return Zeros(search["counted"], search["found"], len(search["continued"]), len(search["undetermined"]))
 
 
 def _by_mode(document: Mapping[str, Any]) -> dict[ModeKey, dict[str, Any]]:
