@@ -2,6 +2,7 @@
 
 from dataclasses import replace
 from fractions import Fraction
+from random import Random
 
 import pytest
 from flint import acb, ctx
@@ -9,6 +10,7 @@ from flint import acb, ctx
 from knell.methods import radial
 from knell.methods.original import original_equation
 from knell.methods.radial import solve, solve_equation
+from knell.methods.recurrence import SeriesError
 from knell.physics.background import PowerLaw
 
 SCHWARZSCHILD = PowerLaw(3, Fraction(0))
@@ -94,6 +96,30 @@ def test_a_coefficient_off_by_one_part_in_a_million_is_seen():
     right, wrong = (solve_equation(e, seed, 15) for e in (equation, disturbed))
     # dω/ω ≈ δV/(2V) ≈ 5e-7; agreement to ten digits would hide it only below 1e-10
     assert 1e-8 < abs(complex(right.frequency) - complex(wrong.frequency)) < 1e-5
+
+
+def test_nearly_extremal_hole_takes_the_bits_it_needs():
+    # two seeds, 1e-5 off on either side: the solutions lose hundreds of bits on the way, and values of D that are
+    # rounding noise would send each seed back as if it were a mode
+    background = PowerLaw(2, 1 - Fraction(1, 10**5))
+    runs = [solve(background, "axial", 2, 0.49013 - 0.08167j + shift, 12) for shift in (1e-5, -1e-5j)]
+    assert [run.status for run in runs] == ["ok", "ok"]
+    with ctx.workprec(200):
+        assert abs(runs[0].frequency - runs[1].frequency) < runs[0].error + runs[1].error < 1e-12
+
+
+def test_rounding_noise_is_recognised():
+    class Noise:
+        inner_bits = 80
+
+        def __init__(self):
+            self.random = Random(5)
+
+        def wronskian(self, omega):
+            return acb(self.random.gauss(0, 1), self.random.gauss(0, 1))
+
+    with pytest.raises(SeriesError, match="noise"):
+        radial._secant(Noise(), acb(0.4, -0.1), 12)
 
 
 def test_a_seed_with_no_mode_near_it_does_not_come_back_as_a_mode_there():

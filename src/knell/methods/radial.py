@@ -29,6 +29,7 @@ from knell.physics.background import PowerLaw
 _GUARD_BITS = 24
 _ITERATIONS = 16
 _ATTEMPTS = 4
+_FALL, _NOISY = 1e-3, 4
 _FIRST = Route(tilt=0.0, stretch=1.3, entry=0.4, ratio=0.4, meeting=complex(-0.1, 0.5))
 _SECOND = Route(tilt=-0.35, stretch=1.6, entry=0.29, ratio=0.31, meeting=complex(0.15, -0.25))
 _SECOND_EXTRA_BITS = 32
@@ -122,7 +123,7 @@ def _attempt(equation: OriginalEquation, seed: Any, digits: int, extra: int) -> 
             return RadialRun("failed", None, None, f"no convergence in {_ITERATIONS} secant steps"), 0
         check = second.wronskian(omega)
     except SeriesError as stall:
-        return RadialRun("failed", None, None, str(stall)), 32
+        return RadialRun("failed", None, None, str(stall)), 64
     size = float(abs(omega))
     error = max(2 * float(abs(check / slope)), size * 2.0**-bits)
     if error <= size * 10.0**-digits:
@@ -134,20 +135,27 @@ def _attempt(equation: OriginalEquation, seed: Any, digits: int, extra: int) -> 
 def _secant(setting: _Setting, seed: Any, digits: int) -> tuple[Any, Any | None]:
     """The zero of ``D`` near ``seed`` and ``D'`` there (``None``: no convergence).
 
-    It stops when the error left after the last step, of the order of the product of the last two steps, is negligible.
+    It stops when the error left after the last step, of the order of the product of the last two steps, is negligible
+    and ``D`` has fallen along with the steps. If it has not, its values are rounding noise, whose steep slopes make
+    small steps as well, and `SeriesError` says so.
     """
     with ctx.workprec(setting.inner_bits):
         enough = 10.0 ** -(digits + 4)
-        before, here = seed, (seed * (1 + acb(2**-50, 2**-51))).mid()
+        before, here = seed, (seed * (1 + acb(2**-40, 2**-41))).mid()
         value_before, value = setting.wronskian(before), setting.wronskian(here)
+        small_steps = 0
         for _ in range(_ITERATIONS):
             if value == value_before:
                 break
             slope = (value - value_before) / (here - before)
             step = value / slope
             product = float(abs(step)) * max(float(abs(here - before)), float(abs(step))) / float(abs(here)) ** 2
-            before, value_before, here = here, value, (here - step).mid()
             if product < enough:
-                return here, slope
+                if bool(abs(value) < abs(value_before) * _FALL):
+                    return (here - step).mid(), slope
+                small_steps += 1
+                if small_steps == _NOISY:
+                    raise SeriesError("the Wronskian is rounding noise at this precision")
+            before, value_before, here = here, value, (here - step).mid()
             value = setting.wronskian(here)
         return here, None

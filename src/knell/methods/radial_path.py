@@ -166,9 +166,15 @@ def _check_winding(geometry: Geometry, start: complex, end: complex) -> None:
 
 
 def _lost_bits(geometry: Geometry, omega: complex, start: complex, end: complex) -> int:
-    """Bits lost where the ingoing wave falls against the outgoing one: ``|Ψ_in/Ψ_out| ≈ exp(2 Im ω r*)``."""
+    """Bits lost where the ingoing wave falls against the outgoing one, ``|Ψ_in/Ψ_out| ≈ exp(2 Im ω r*)``, and in the
+    Frobenius series, whose terms grow to about ``(1 - x/δ)^-|ω/f'(r_h)|``, ``δ`` its radius of convergence."""
     points = _samples(geometry.horizon, start, end)
-    return math.ceil(_largest_drop(geometry, omega, points) / math.log(2))
+    lost = _largest_drop(geometry, omega, points)
+    if not geometry.degenerate:
+        x = math.exp(start.real)
+        slope = abs(geometry.f(geometry.horizon + 1e-3 * x)) / (1e-3 * x)
+        lost -= abs(omega) / slope * math.log1p(-x / geometry.horizon_radius_of_convergence)
+    return math.ceil(lost / math.log(2))
 
 
 def _largest_drop(geometry: Geometry, omega: complex, points: Sequence[complex]) -> float:
