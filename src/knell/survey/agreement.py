@@ -13,6 +13,7 @@ import decimal
 import math
 from dataclasses import dataclass
 from decimal import ROUND_HALF_EVEN, Decimal
+from functools import cached_property
 
 # Far more digits than any run writes, so that no difference is rounded.
 _CONTEXT = decimal.Context(prec=5000, Emax=decimal.MAX_EMAX, Emin=decimal.MIN_EMIN)
@@ -25,7 +26,7 @@ class Frequency:
     re: str
     im: str
 
-    @property
+    @cached_property
     def parts(self) -> tuple[Decimal, Decimal]:
         """Real and imaginary part, exactly as written. Raises `ValueError` for text that is no finite number."""
         try:
