@@ -2,6 +2,7 @@
 
 from dataclasses import replace
 from fractions import Fraction
+from itertools import pairwise
 from math import erf, pi, sqrt
 
 import numpy as np
@@ -34,6 +35,13 @@ def test_one_lattice_is_of_second_order_and_the_extrapolated_error_is_honest(bac
     assert coarse / fine == pytest.approx(4, rel=0.05)  # the next order changes the ratio by h², about 1 %
     signal = evolve(equation, PULSE, 40.0, 0.2)
     assert np.max(np.abs(signal.values - exact)) < np.max(signal.error) < 0.01 * fine
+
+
+def test_extrapolation_is_of_sixth_order():
+    runs = [evolve(EQUATION, PULSE, 40.0, h).values[:: round(0.4 / h)] for h in (0.4, 0.2, 0.1)]
+    changes = [np.max(np.abs(a - b)) for a, b in pairwise(runs)]
+    # 2⁶ = 64; fourth order would give 16, and the next order changes the ratio by some h² ω² ~ 10 %
+    assert 45 < changes[0] / changes[1] < 80
 
 
 def test_nothing_arrives_before_light_does():
