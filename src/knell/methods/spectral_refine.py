@@ -25,7 +25,7 @@ from knell.methods.spectral_blocks import solve_bordered
 from knell.methods.spectral_path import TILT, bent_path, orders
 from knell.methods.spectral_residual import residual, slope
 from knell.physics.background import PowerLaw
-from knell.physics.equation import equation_balls
+from knell.physics.equation import Equation, equation_balls
 
 _GUARD_DIGITS = 30
 _ROUNDS = 12
@@ -62,6 +62,11 @@ class Discretisation:
     matrices: Pencil
 
 
+def working_bits(digits: int) -> int:
+    """Precision for ``digits`` digits: rounding is amplified by the pencil's condition, up to about ``10^20``."""
+    return math.ceil((digits + _GUARD_DIGITS) * math.log2(10))
+
+
 class SpectralProblem:
     """One equation on one path, for any number of modes to ``digits`` digits.
 
@@ -69,14 +74,20 @@ class SpectralProblem:
     the path encloses a root of ``f``.
     """
 
-    def __init__(self, background: PowerLaw, field: str, ell: int, digits: int = 20, tilt: float = TILT) -> None:
+    def __init__(self, equation: Equation, digits: int = 20, tilt: float = TILT) -> None:
+        """``equation`` over balls of at least `working_bits` bits."""
+        self.equation = equation
         self.digits = digits
-        self.bits = math.ceil((digits + _GUARD_DIGITS) * math.log2(10))
-        self.equation = equation_balls(background, field, ell, self.bits)
-        doubles = self.equation.map(float)
+        self.bits = working_bits(digits)
+        doubles = equation.map(float)
         self.path = bent_path(doubles, tilt)
         self.frequencies = frequency_range(doubles)
         self._levels: list[Discretisation] = []
+
+    @classmethod
+    def of(cls, background: PowerLaw, field: str, ell: int, digits: int = 20, tilt: float = TILT) -> SpectralProblem:
+        """The problem of a background, a field and ``ℓ``."""
+        return cls(equation_balls(background, field, ell, working_bits(digits)), digits, tilt)
 
     def resolution(self, level: int) -> Discretisation:
         """Raises `NotConverged` where it would take too many coefficients: the horizon is too nearly degenerate."""
