@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from functools import lru_cache
-from math import ceil, log
+from math import ceil, e, log2, log10
 
 from flint import acb, arb, ctx
 
@@ -34,14 +34,15 @@ class Effort:
 class Run:
     """Everything that an evaluation of ``D`` needs to be repeated: nothing else enters it.
 
-    ``sigma`` is exact; ``radius`` is that of the σ disc (a double, 0 for a single value).
+    ``sigma`` is exact; ``radius`` is that of the σ disc (a double, 0 for a single value); ``tolerances`` of the two
+    sides only say where a series may end.
     """
 
     sigma: acb
     radius: float
     degree: int
     bits: int
-    tolerance: arb
+    tolerances: tuple[arb, arb]
     cleared: tuple[int, ...]
     infinity: Route
     horizon: Route
@@ -51,7 +52,7 @@ class Run:
         with ctx.workprec(self.bits):
             ring = Models(self.sigma, arb(self.radius), self.degree) if self.radius else Values(self.sigma)
             routes = (self.infinity, self.horizon)
-            found = mismatch(problem, ring, self.bits, routes, self.tolerance, self.cleared)
+            found = mismatch(problem, ring, self.bits, routes, self.tolerances, self.cleared)
             return found, replace(self, infinity=found.infinity, horizon=found.horizon)
 
 
@@ -95,17 +96,16 @@ def cleared_factors(problem: Problem, sigma: complex, radius: float, reach: floa
 
 def prepare(problem: Problem, sigma: acb, radius: float, effort: Effort, cleared: tuple[int, ...] = ()) -> Run:
     """A run for the disc of ``radius`` about ``sigma``: routes long enough, digits and bits for what they amplify."""
-    z, routes, worst = complex(sigma), [], 0.0
+    z, routes, digits = complex(sigma), [], []
     for land, at_horizon in zip(lands(problem), (False, True), strict=True):
-        vertices = plan(land, at_horizon, z, effort.digits + 3, effort.stride)
-        lost = growth(land, vertices, z)
-        if lost > 3:
-            vertices = plan(land, at_horizon, z, effort.digits + 3 + lost / log(10), effort.stride)
-            lost = growth(land, vertices, z)
-        worst = max(worst, lost)
+        needed = effort.digits
+        if at_horizon and cleared:
+            needed += max(0.0, -sum(log10(max(abs(1 - 2 * z / (land.lead * j)), 1e-3)) for j in cleared))
+        lost = log10(e) * growth(land, plan(land, at_horizon, z, needed + 3, effort.stride), z)
+        vertices = plan(land, at_horizon, z, needed + lost + 3, effort.stride)
+        digits.append(needed + log10(e) * growth(land, vertices, z))
         routes.append(Route(vertices))
-    digits = effort.digits + worst / log(10)
-    bits = 64 + ceil(1.25 * digits * log(10) / log(2)) + 4 * effort.degree
+    bits = 64 + ceil(1.25 * max(digits) * log2(10)) + 4 * effort.degree
     with ctx.workprec(64):
-        tolerance = (arb(10) ** (-digits)).mid()
-    return Run(sigma, radius, effort.degree, bits, tolerance, cleared, routes[0], routes[1])
+        tolerances = tuple((arb(10) ** (-d)).mid() for d in digits)
+    return Run(sigma, radius, effort.degree, bits, tolerances, cleared, routes[0], routes[1])

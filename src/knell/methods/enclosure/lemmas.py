@@ -11,22 +11,34 @@ has ``L e = -R``, ``|R| <= ρ ξ^m``. Every bound below is a number that holds f
 the disc at hand, because the suprema are taken over it. ``L`` is linear: residuals that start
 at different powers are bounded apart and the errors added.
 
-**Transport over an ordinary step** (``P ≠ 0`` on the segment; ``e(0)``, ``e'(0)`` known to lie within bounds).
-On a piece of length ``δ`` let ``r >= sup Re(-(2σκ+P')/P)``, of either sign, ``c >= sup|C/P|`` and
-``ρ' = ρ/inf|P|``. From ``e'' = -((2σκ+P')/P) e' - (C/P) e - R/P`` and ``|z|' <= Re(z̄z')/|z|``
+**Transport over an ordinary step** (``P ≠ 0`` on the segment; bounds of ``e(0)``, ``e'(0)`` given). Take a piece of
+length ``δ`` and any complex number ``λ``. With ``B = (2σκ+P')/P`` and ``z = e' - λe``, ``e'' = -Be' - (C/P)e - R/P``
+becomes
 
-    |e|' <= |e'|,      |e'|' <= r|e'| + c|e| + ρ'.
+    e' = λe + z,      z' = -(B+λ) z - [(B+λ)λ + C/P] e - R/P.
 
-The off-diagonal entries of ``A = [[0, 1], [c, r]]`` are not negative, so (Kamke) ``(|e|, |e'|)`` stays below the
-solution of ``z' = Az + (0, ρ')`` that starts from the bounds. With ``g(s) = (exp sA)_{01}``: ``(exp sA)_{11} = g'``,
-``g`` increases from 0, and ``∫₀^δ exp(sA) (0, 1) ds = (∫g, g(δ)) <= (δ g(δ), g(δ))``, so
+Let ``r >= sup Re(-(B+λ))``, of either sign, ``c >= sup|(B+λ)λ + C/P|``, ``ρ' = ρ/inf|P|``. As ``|y|' <=
+Re(ȳy')/|y|``, ``|e|' <= Re(λ)|e| + |z|`` and ``|z|' <= r|z| + c|e| + ρ'``. The off-diagonal entries of ``A = [[Re λ,
+1], [c, r]]`` are not negative, so (Kamke) ``(|e|, |z|)`` stays below the solution of ``y' = Ay + (0, ρ')`` that
+starts from the bounds. With ``μ± = (Re λ + r ± Δ)/2``, ``Δ = √((Re λ - r)² + 4c)`` and ``g(s) = (e^{μ₊s} -
+e^{μ₋s})/Δ``
 
-    (|e|, |e'|)(δ) <= exp(δA) (|e|, |e'|)(0) + ρ' (δ g(δ), g(δ)).
+    exp(sA) = e^{μ₋s} + g(s) (A - μ₋),    no entry negative, since μ₋ <= Re λ, r.
 
-With ``λ± = (r ± Δ)/2``, ``Δ = √(r²+4c)``: ``g = (e^{λ₊δ} - e^{λ₋δ})/Δ``, ``(exp δA)_{00} = (λ₊e^{λ₋δ} -
-λ₋e^{λ₊δ})/Δ``, ``(exp δA)_{10} = cg``, ``(exp δA)_{11} = (λ₊e^{λ₊δ} - λ₋e^{λ₋δ})/Δ``. No smallness is needed, and
-where the path runs so that the unwanted solution dies (``r < 0``) errors die with it: one solution is carried, its
-error beside it, and no fundamental matrix, whose fast column would cost twice the terms.
+The source adds ``ρ'(∫g, ∫e^{μ₋s} + (r-μ₋)∫g)`` over the piece, where ``g(s) <= e^{max(μ₊,0)δ} min(δ, 1/Δ)`` and
+``∫e^{μ₋s} <= δ max(1, e^{μ₋δ})``, ``<= 1/|μ₋|`` for ``μ₋ < 0``. From one piece to the next ``|z|`` grows by
+``|λ - λ_next||e|``.
+
+Every ``λ`` gives a true bound, at each ``σ`` a different one if that helps. ``λ = λ₀ + λ₁τ`` is taken, with the root of
+``λ² + Bλ + C/P = 0`` nearer to 0 and its slope in ``τ`` in the middle of the piece: the local exponent of the slow
+solution. ``-(B+λ)`` is then that of the fast one, and ``c`` holds only what varies over the piece and to second order in ``τ``.
+With ``B = B₀ + B₁τ``, ``C/P = C₀ + C₁τ + C₂τ²`` and ``|τ| <= 1``, over the piece
+
+    c >= |(B₀+λ₀)λ₀ + C₀| + |(B₀+λ₀)λ₁ + (B₁+λ₁)λ₀ + C₁| + |(B₁+λ₁)λ₁ + C₂|,
+    r >= Re(-(B₀+λ₀)) + |B₁+λ₁|,      Re λ <= Re λ₀ + |λ₁|.
+
+No smallness is needed, and where the path runs so that the unwanted solution dies (``r < 0``), errors die with it. So
+one solution is carried with its error beside it, and no fundamental matrix, whose fast column would cost twice the terms.
 
 **Regular horizon** (``P = ξG``, ``G ≠ 0``; ``e = O(ξ^{m+1})`` analytic). For ``ψ = Pe'``:
 ``ψ' = -(2σκ/G)ψ/ξ - Ce - R``, hence ``|ψ|' <= α₊|ψ|/ξ + c|e| + ρξ^m`` with
@@ -61,8 +73,9 @@ outgoing solution at infinity and the ingoing one at a degenerate horizon.
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 
-from flint import arb
+from flint import acb, arb
 
 from knell.methods.enclosure.refusal import LostPrecision, WeakBound
 
@@ -85,29 +98,51 @@ def _above(value: arb, name: str) -> arb:
     return value.upper()
 
 
-def transport(
-    errors: tuple[arb, arb], rho: arb, pieces: Sequence[tuple[arb, arb, arb]], length: arb
-) -> tuple[arb, arb]:
-    """Bounds of ``|e|``, ``|e'|`` after a step cut into equal pieces of ``length``, each with ``(r, c, inf|P|)``.
+@dataclass(frozen=True)
+class Piece:
+    """Bounds on one piece of a step: the exact numbers ``λ₀`` and ``λ₁``, ``r``, ``c`` and ``inf|P|``."""
+
+    slow: acb
+    bend: acb
+    rate: arb
+    coupling: arb
+    least: arb
+
+
+def transport(errors: tuple[arb, arb], rho: arb, pieces: Sequence[Piece], length: arb) -> tuple[arb, arb]:
+    """Bounds of ``|e|``, ``|e'|`` after a step cut into equal pieces of ``length``.
 
     ``errors`` bound ``|e|``, ``|e'|`` before it and ``rho`` bounds ``|R|`` on all of it.
     """
-    value, slope = errors
-    for rate, coupling, least in pieces:
-        # A larger c is a weaker bound, and keeps Δ away from 0.
-        c = (coupling + _LEAST_COUPLING).upper()
-        r = _above(rate, "a growth rate")
-        source = _above(rho / _positive(least, "inf|p|"), "the residual")
-        delta = (r * r + 4 * c).sqrt()
-        fast, slow = (r - delta) / 2, (r + delta) / 2
-        down, up = (fast * length).exp(), (slow * length).exp()
-        g = (up - down) / delta
-        value, slope = (
-            (slow * down - fast * up) / delta * value + g * slope + source * length * g,
-            c * g * value + (slow * up - fast * down) / delta * slope + source * g,
-        )
-        value, slope = _above(value, "the error"), _above(slope, "the error")
-    return value, slope
+    value, excess, slow, bend = errors[0], errors[1], acb(0), acb(0)
+    for piece in pieces:
+        excess = excess + ((piece.slow - slow).abs_upper() + (piece.bend - bend).abs_upper()) * value
+        slow, bend = piece.slow, piece.bend
+        source = _above(rho / _positive(piece.least, "inf|p|"), "the residual")
+        value, excess = _transport_piece(value, excess, source, piece, length)
+    return value, _above(excess + (slow.abs_upper() + bend.abs_upper()) * value, "the error")
+
+
+def _transport_piece(value: arb, excess: arb, source: arb, piece: Piece, length: arb) -> tuple[arb, arb]:
+    # A larger c is a weaker bound, and keeps Δ away from 0.
+    c = _above(piece.coupling + _LEAST_COUPLING, "a coupling")
+    r, drift = _above(piece.rate, "a growth rate"), _above(piece.slow.real + abs(piece.bend), "a growth rate")
+    delta = ((drift - r) ** 2 + 4 * c).sqrt()
+    high, low = (drift + r + delta) / 2, (drift + r - delta) / 2
+    up, down = (high * length).exp(), (low * length).exp()
+    g = (up - down) / delta
+    grown = _above(up, "a growth") if bool(high > 0) else arb(1).max(up)
+    integral_g = length * grown * length.min(1 / delta)
+    integral_down = length * arb(1).max(down)
+    if bool(low < 0):
+        integral_down = integral_down.min(-1 / low)
+    return (
+        _above((down + g * (drift - low)) * value + g * excess + source * integral_g, "the error"),
+        _above(
+            c * g * value + (down + g * (r - low)) * excess + source * (integral_down + (r - low) * integral_g),
+            "the error",
+        ),
+    )
 
 
 def regular_tail(rho: arb, alpha: arb, c: arb, inf_g: arb, m: int) -> tuple[arb, arb]:

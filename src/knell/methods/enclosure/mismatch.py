@@ -71,7 +71,7 @@ def mismatch(
     ring: Ring,
     bits: int,
     routes: tuple[Route, Route],
-    tolerance: arb,
+    tolerances: tuple[arb, arb],
     cleared: Sequence[int] = (),
 ) -> Mismatch:
     """``D = φ_∞ φ_h' - φ_∞' φ_h`` at ``u_m`` (primes d/du), the horizon side cleared of ``J`` = ``cleared``.
@@ -81,8 +81,8 @@ def mismatch(
     ends = (side(problem, bits, False), side(problem, bits, True))
     points = [exact_vertices(route.vertices, end.at_horizon) for route, end in zip(routes, ends, strict=True)]
     check_homotopy(problem.equation(bits), points[0], points[1], ring.disc)
-    out = carry(ends[0], ring, routes[0], tolerance)
-    inward = carry(ends[1], ring, routes[1], tolerance, cleared)
+    out = carry(ends[0], ring, routes[0], tolerances[0])
+    inward = carry(ends[1], ring, routes[1], tolerances[1], cleared)
     a, b = out.state, inward.state
     # d/du = -d/dx on the horizon side.
     value, excess = ring.cut(-(a.value * b.slope + a.slope * b.value))

@@ -90,10 +90,10 @@ def first_vertex(land: Ground, sigma: complex, digits: float, x_m: complex) -> c
     if land.irregular:
         size = 2 * abs(sigma) / (2.303 * digits + 10) / land.lead
         return rect(min(size, 0.45 * land.gap, 0.3), continuous_phase(sigma) - 3 * pi / 4)
-    size = 0.45 * min(1.0, land.gap)
     if land.gap >= 0.25:
-        return rect(min(size, abs(x_m)), phase(x_m))
-    return rect(size, max(continuous_phase(sigma) - 3 * pi / 4, -0.78 * pi))
+        return rect(min(0.45 * min(1.0, land.gap), abs(x_m)), phase(x_m))
+    # The unwanted solution goes like (x/(x+δ))^(2σ/p₁): a far first vertex leaves it less to grow.
+    return rect(0.6 * land.gap, max(continuous_phase(sigma) - 3 * pi / 4, -0.78 * pi))
 
 
 def spiral(land: Ground, sigma: complex, x1: complex, x_m: complex, stride: Stride) -> tuple[complex, ...]:

@@ -19,10 +19,11 @@ from typing import Any
 
 from flint import acb, acb_poly, arb
 
+from knell.methods.enclosure.lemmas import Piece
 from knell.methods.enclosure.refusal import BadStructure, LostPrecision
-from knell.methods.enclosure.taylor import lower, upper
+from knell.methods.enclosure.taylor import exact_point, lower, upper
 
-PIECES = 8
+PIECES = 16
 
 
 @dataclass(frozen=True)
@@ -91,24 +92,42 @@ def _potential(segment: Segment, sigma: acb) -> Callable[[acb], acb]:
     return lambda xi: sigma * slope(xi) - square * q(xi) - w(xi)
 
 
-def ordinary_rates(segment: Segment, sigma: acb, pieces: int = PIECES) -> list[tuple[arb, arb, arb]]:
-    """For each piece ``sup Re(-(2σκ+P')/P)``, ``sup|C/P|`` and ``inf|P|``, over the piece and the σ ball.
+def ordinary_pieces(segment: Segment, centre: acb, radius: arb, pieces: int = PIECES) -> list[Piece]:
+    """What `lemmas.transport` needs of each of the equal pieces of the step, for ``|σ - centre| <= radius``.
 
     Raises `BadStructure` when ``P`` may vanish on the step.
     """
-    P, kappa = acb_poly(list(segment.P)), acb_poly(list(segment.kappa))
-    slope, potential = P.derivative(), _potential(segment, sigma)
-    rates = []
+    P, kappa, q, w = (acb_poly(list(part)) for part in (segment.P, segment.kappa, segment.q, segment.w))
+    p_slope, kappa_slope, square = P.derivative(), kappa.derivative(), centre * centre
+    found = []
     for xi in covering(pieces):
         p = P(xi)
         least = lower(p)
         if not bool(least > 0):
             raise BadStructure("p may vanish on an ordinary step: shorten it or move the path")
-        growth = (-(2 * sigma * kappa(xi) + slope(xi)) / p).real
-        if not growth.is_finite():
+        k, k_slope, q_here = kappa(xi), kappa_slope(xi), q(xi)
+        b0, b1 = (2 * centre * k + p_slope(xi)) / p, 2 * radius * k / p
+        c0 = (centre * k_slope - square * q_here - w(xi)) / p
+        c1, c2 = radius * (k_slope - 2 * centre * q_here) / p, -radius * radius * q_here / p
+        slow, bend = slow_exponent(b0, b1, c0, c1)
+        fast, fast_bend = b0 + slow, b1 + bend
+        parts = (fast * slow + c0, fast * bend + fast_bend * slow + c1, fast_bend * bend + c2)
+        coupling = sum((upper(part) for part in parts), arb(0)).upper()
+        rate = ((-fast.real).upper() + upper(fast_bend)).upper()
+        if not rate.is_finite():
             raise LostPrecision("a growth rate is not finite: raise the precision")
-        rates.append((growth.upper(), (upper(potential(xi)) / least).upper(), least))
-    return rates
+        found.append(Piece(slow, bend, rate, coupling, least))
+    return found
+
+
+def slow_exponent(b0: acb, b1: acb, c0: acb, c1: acb) -> tuple[acb, acb]:
+    """The root nearer to 0 of ``λ² + Bλ + C/P = 0`` and its slope in ``τ``, at the midpoints, as exact doubles."""
+    b, b_bend, c, c_bend = (complex(x.mid()) for x in (b0, b1, c0, c1))
+    root = (b * b - 4 * c) ** 0.5
+    larger = (-b - root) / 2 if abs(-b - root) > abs(-b + root) else (-b + root) / 2
+    slow = c / larger if larger else 0j
+    steep = b + 2 * slow
+    return exact_point(slow), exact_point(-(b_bend * slow + c_bend) / steep if steep else 0j)
 
 
 def singular_suprema(

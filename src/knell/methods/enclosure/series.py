@@ -36,7 +36,7 @@ from flint import acb, arb
 
 from knell.methods.enclosure import lemmas
 from knell.methods.enclosure.refusal import LostPrecision, WeakBound
-from knell.methods.enclosure.segment import Segment, ordinary_rates, singular_suprema
+from knell.methods.enclosure.segment import Segment, ordinary_pieces, singular_suprema
 from knell.methods.enclosure.taylor import ZERO, Models, Values, upper
 
 Ring = Values | Models
@@ -112,7 +112,7 @@ def ordinary_step(segment: Segment, ring: Ring, state: State, cut: Cut) -> State
 
     Raises `BadStructure` when ``p`` may vanish on the way, `LostPrecision` when the series does not end.
     """
-    pieces = ordinary_rates(segment, ring.disc)
+    pieces = ordinary_pieces(segment, ring.centre, ring.radius)
     lead = acb(-1) / segment.P[0]
     a: list[Any] = [state.value, state.slope]
     rho, target = ZERO, cut.order
@@ -149,9 +149,11 @@ def _sums(ring: Ring, a: Sequence[Any], value_error: arb, slope_error: arb) -> S
     value, slope = a[0], ring.lift(acb(0))
     for j in range(1, len(a)):
         value, slope = value + a[j], slope + a[j] * j
+    (value, value_rest), (slope, slope_rest) = ring.cut(value), ring.cut(slope)
     value, value_radius = ring.split(value)
     slope, slope_radius = ring.split(slope)
-    return State(value, slope, (value_error + value_radius).upper(), (slope_error + slope_radius).upper(), len(a) - 1)
+    errors = (value_error + value_rest + value_radius).upper(), (slope_error + slope_rest + slope_radius).upper()
+    return State(value, slope, *errors, len(a) - 1)
 
 
 def singular_start(segment: Segment, ring: Ring, cut: Cut, irregular: bool, cleared: Sequence[int] = ()) -> State:
@@ -165,7 +167,8 @@ def singular_start(segment: Segment, ring: Ring, cut: Cut, irregular: bool, clea
         raise WeakBound("there is no factor to clear at an irregular end")
     known = max([_least_start(bounds, irregular), *cleared])
     rows = factors(segment, ring)
-    a = _leading_coefficients(segment, ring, rows, known, cleared)
+    # Remainders of these coefficients grow along the recurrence: a higher degree keeps them small while it matters.
+    a = _leading_coefficients(segment, ring.raised(known), rows, known, cleared)
     rho, target, k = ZERO, cut.order, known
     for k, row in rows:
         if target is None and k > max(known, 4) and k % 3 == 0 and _small(ring, a, cut.tolerance):

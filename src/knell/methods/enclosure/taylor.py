@@ -69,7 +69,11 @@ class Values:
             raise InexactVertex("σ is not an exact number")
         self.sigma = sigma
         self.centre = sigma
+        self.radius = ZERO
         self.disc = sigma
+
+    def raised(self, extra: int) -> Values:
+        return self
 
     def lift(self, x: Any) -> Any:
         return x
@@ -112,6 +116,10 @@ class Models:
         self.radius = radius
         self.sigma = acb_poly([centre, acb(radius)])
         self.disc = centre + box(radius)
+
+    def raised(self, extra: int) -> Models:
+        """The same disc with models of a higher degree."""
+        return Models(self.centre, self.radius, self.degree + extra)
 
     def lift(self, x: Any) -> acb_poly:
         return x if isinstance(x, acb_poly) else acb_poly([x])
