@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+import signal
 import subprocess
 import sys
 from dataclasses import dataclass
@@ -16,15 +17,18 @@ TINY = ROOT / "tests" / "config" / "tiny.yaml"
 
 @dataclass(frozen=True)
 class Workflow:
-    """``config`` is a copy of the tiny config that a test may edit; results go to ``results/tiny``."""
+    """``config`` is a copy of the tiny config that a test may edit; results go to ``results/tiny``.
+
+    ``targets`` are the files to make; none means all.
+    """
 
     folder: Path
     config: Path
+    targets: tuple[str, ...] = ()
 
     def command(self, *options: str) -> list[str]:
-        # Pytest runs a single job at a time: two of them are enough to meet races.
         fixed = ["--snakefile", str(ROOT / "Snakefile"), "--cores", "2", "--configfile", "tiny.yaml"]
-        return [sys.executable, "-m", "snakemake", *fixed, *options]
+        return [sys.executable, "-m", "snakemake", *self.targets, *fixed, *options]
 
     def start(self, *options: str) -> subprocess.Popen[str]:
         """Snakemake in a process group of its own, as a terminal starts it."""
@@ -35,6 +39,8 @@ class Workflow:
             stderr=subprocess.STDOUT,
             text=True,
             start_new_session=True,
+            # Whoever starts the tests in the background has them ignore Ctrl-C.
+            preexec_fn=lambda: signal.signal(signal.SIGINT, signal.SIG_DFL),
         )
 
     def run(self, *options: str) -> tuple[int, str]:

@@ -14,6 +14,6 @@ rule cell:
     params:
         solver=SOLVER,
     shell:
-        "knell cell --point {wildcards.point} --window {wildcards.window} --search {input}"
+        "logged {log} knell cell --point {wildcards.point} --window {wildcards.window} --search {input}"
         " --depth {wildcards.depth} --precision {wildcards.precision}"
-        " --solver {params.solver} --output {output.result} 2> {log}"
+        " --solver {params.solver} --output {output.result}"

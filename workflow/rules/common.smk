@@ -11,8 +11,14 @@ from knell.record.verify import check_files
 from knell.survey.config import DEFAULT, ConfigError, load_config, show_overrides
 from knell.survey.layout import CELLS, FIGURE_FORMATS, record_path
 
-# In the rules `knell` is this package under the interpreter that runs Snakemake: nothing has to be activated.
-shell.prefix(f'set -euo pipefail; knell() (exec {shlex.quote(sys.executable)} -m knell "$@"); ')
+# In the rules `knell` is this package under the interpreter that runs Snakemake, so nothing has to be activated, and
+# `logged FILE command` keeps what the command says in its log, and shows it too when the command fails.
+PYTHON = shlex.quote(sys.executable)
+shell.prefix(
+    "set -euo pipefail; "
+    f'knell() (exec {PYTHON} -m knell "$@"); '
+    'logged() (log=$1; shift; "$@" 2> "$log" || (cat "$log" >&2; exit 1)); '
+)
 
 SOLVER = source.source_hash(source.SOLVER)
 OVERRIDES = workflow.config_settings.config

@@ -15,7 +15,7 @@ rule resolve_config:
         overrides=[word for entry in show_overrides(OVERRIDES) for word in ("--set", entry)],
         source=source.source_hash("knell.survey.config"),
     shell:
-        "knell config {input:q} {params.overrides:q} --output {output.result:q} 2> {log:q}"
+        "logged {log:q} knell config {input:q} {params.overrides:q} --output {output.result:q}"
 
 
 rule dataset:
@@ -33,4 +33,4 @@ rule dataset:
         solver=SOLVER,
         source=source.source_hash(source.DATASET),
     shell:
-        "knell merge --config {input.config:q} --output {output.result:q} 2> {log:q}"
+        "logged {log:q} knell merge --config {input.config:q} --output {output.result:q}"

@@ -24,4 +24,4 @@ for figure in FIGURES:
             figure=figure,
             source=source.source_hash(source.FIGURES),
         shell:
-            "knell figure {params.figure} --dataset {input:q} --output {output.png:q} {output.pdf:q} 2> {log:q}"
+            "logged {log:q} knell figure {params.figure} --dataset {input:q} --output {output.png:q} {output.pdf:q}"

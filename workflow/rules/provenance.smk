@@ -14,4 +14,4 @@ rule provenance:
     benchmark:
         f"{CONFIG.results}/benchmarks/provenance.tsv"
     shell:
-        "knell record --config {input.config:q} --output {output:q} {input.made:q} 2> {log:q}"
+        "logged {log:q} knell record --config {input.config:q} --output {output:q} {input.made:q}"

@@ -13,5 +13,5 @@ rule search:
     params:
         solver=SOLVER,
     shell:
-        "knell search --point {wildcards.point} --window {wildcards.window}"
-        " --solver {params.solver} --output {output.result} 2> {log}"
+        "logged {log} knell search --point {wildcards.point} --window {wildcards.window}"
+        " --solver {params.solver} --output {output.result}"

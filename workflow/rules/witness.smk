@@ -16,5 +16,5 @@ rule witness:
     params:
         solver=SOLVER,
     shell:
-        "knell witness --point {wildcards.point} --window {wildcards.window} --search {input}"
-        " --solver {params.solver} --output {output.result} 2> {log}"
+        "logged {log} knell witness --point {wildcards.point} --window {wildcards.window} --search {input}"
+        " --solver {params.solver} --output {output.result}"
