@@ -42,6 +42,8 @@ class Parser(argparse.ArgumentParser):
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run one command and return its exit code: 0, or 1 after a line that says what went wrong, 2 for bad options."""
+    # One command is one core to the scheduler; threads of the linear algebra would only contend.
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     arguments = list(sys.argv[1:] if argv is None else argv)
     if arguments[:1] == ["--version"]:
         print(f"knell {__version__}")

@@ -132,6 +132,8 @@ def _series(
             if bool(moment.rad() > 10 * tolerance):
                 raise Starved("rounding spreads beyond the tolerance")
             return value.mid(), (moment / x).mid()
+    if bool(abs(term).rad() * longest > tolerance):
+        raise Starved("rounding keeps the terms of a local series above the tolerance")
     raise SeriesTooLong("a local series has not fallen below the tolerance")
 
 

@@ -24,6 +24,8 @@ from knell.physics.equation import Equation, local
 INFINITY_TERMS = 45
 HORIZON_TERMS = 60
 BEYOND_TERMS = 170
+# Frequencies in one pass: more of them fall out of the processor's cache, fewer waste calls (measured: 200 is too few).
+BATCH = 800
 # Below this distance to the next root the plain horizon series loses its digits to cancellation.
 SMALL_GAP = 0.35
 
@@ -123,6 +125,11 @@ class Matcher:
             self.equation, self.roots, sigma, 1 - x, spiral, 1, self.route.meeting, value, slope, self.route
         )
 
+    def _cross_product(self, sigma: Complexes) -> Complexes:
+        value, slope = self.outgoing(sigma)
+        value_h, slope_h = self.ingoing(sigma)
+        return value * slope_h - slope * value_h
+
     def wronskian(self, sigma: Complexes, scale_at: Complexes | None = None) -> Complexes:
         """``D(σ)`` times ``1/Γ(1 - 2σ/p₁)``, divided by the factor's modulus at ``scale_at``.
 
@@ -131,9 +138,8 @@ class Matcher:
         """
         if not self.equation.degenerate:
             sigma = _off_poles(sigma, self.horizon_slope)
-        value, slope = self.outgoing(sigma)
-        value_h, slope_h = self.ingoing(sigma)
-        D = value * slope_h - slope * value_h
+        batches = np.array_split(sigma, max(1, -(-sigma.size // BATCH)))
+        D = np.concatenate([self._cross_product(batch) for batch in batches])
         if self.equation.degenerate:
             return D
         reference = sigma if scale_at is None else scale_at
