@@ -101,7 +101,7 @@ class SpectralProblem:
         return self._levels[level]
 
 
-def refine(problem: SpectralProblem, seed: complex) -> SpectralRun:
+def refine(problem: SpectralProblem, seed: complex | acb) -> SpectralRun:
     """The mode next to ``seed`` (``Mω``; three digits will do) to the problem's digits.
 
     The resolution is raised until two in a row agree to those digits, at most to the sixth; the value is
