@@ -8,6 +8,7 @@ starts hundreds of them. Every expected failure is one line on standard error.
 from __future__ import annotations
 
 import argparse
+import os
 import re
 import sys
 from collections.abc import Sequence

@@ -22,7 +22,7 @@ from knell.physics.equation import Equation, equation_floats, regularised
 from knell.physics.landmarks import Window, window
 
 CHECKS = (0.0, 0.25, 0.45, 0.6, 0.7, 0.8, 0.87, 0.92, 0.96, 0.99)
-# Doubles follow the principal family up to here; from here to the extremal end it is extrapolated in q, where it is smooth.
+# Doubles follow the principal family up to here; on to the extremal end it is smooth in q and extrapolated.
 LAST_COUPLING = Fraction(995, 1000)
 _ON_TRACK = 1e-6
 _SPECIAL = 1e-7
@@ -32,7 +32,7 @@ _BELOW = 0.15
 _SCHWARZSCHILD_GRAVITY = 0.25
 # A track lands on the zero it points at when that is this much nearer than the next one.
 _LANDING = 0.05
-_LANDING_DEGREE = 5
+_LANDING_DEGREE = 3
 _SECANTS = 30
 
 
