@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import argparse
 
-from knell.errors import StaleError
+from knell.errors import FileError, StaleError
 from knell.record.provenance import Making
 from knell.record.source import DATASET, SOLVER, source_hash
 from knell.survey.config import read_completed
@@ -31,5 +31,9 @@ def run(arguments: argparse.Namespace) -> None:
             f"{solver}; run snakemake --forcerun search"
         )
     result.attrs["record"] = making.id
-    dataset_file.write(result, arguments.output)
+    try:
+        dataset_file.write(result, arguments.output)
+    except RuntimeError as error:
+        # What the netCDF library makes of a full disk.
+        raise FileError(f"cannot write {arguments.output}: {error}; is there space left on the disk?") from None
     making.finish(arguments.output)

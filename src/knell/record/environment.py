@@ -66,7 +66,9 @@ def _git(root: Path, *arguments: str) -> str | None:
     import subprocess
 
     try:
-        done = subprocess.run(["git", "-C", str(root), *arguments], capture_output=True, text=True, check=True)
+        done = subprocess.run(
+            ["git", "--no-optional-locks", "-C", str(root), *arguments], capture_output=True, text=True, check=True
+        )
     except (OSError, subprocess.CalledProcessError):
         return None
     return done.stdout.strip()
