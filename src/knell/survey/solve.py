@@ -121,7 +121,7 @@ def witness(point: Point, search_document: Mapping[str, Any]) -> dict[str, Any]:
 
     background, field, ell = point.background(), point.field, point.ell
     problem, tilted = (
-        spectral.SpectralProblem(background, field, ell, SPECTRAL_DIGITS, tilt) for tilt in (TILT, OTHER_TILT)
+        spectral.SpectralProblem.of(background, field, ell, SPECTRAL_DIGITS, tilt) for tilt in (TILT, OTHER_TILT)
     )
     modes = []
     for mode in search_document["modes"]:
