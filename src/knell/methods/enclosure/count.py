@@ -161,7 +161,7 @@ def _edges(problem: Problem, a: Corner, b: Corner, factors: tuple[int, ...], pac
     half = max(abs(b[0] - a[0]), abs(b[1] - a[1])) / 2
     radius = float(half) / scale * 1.02
     if radius <= longest(problem, sigma):
-        cleared = tuple(j for j in cleared_factors(problem, sigma, radius, REACH) if j in factors)
+        cleared = tuple(j for j in cleared_of(problem, sigma, radius) if j in factors)
         for _ in range(3):
             pace.shorter = False
             try:
@@ -176,6 +176,11 @@ def _edges(problem: Problem, a: Corner, b: Corner, factors: tuple[int, ...], pac
         raise NoCount(f"the edge at Mω = {complex(middle[0], middle[1]):.4f} is not resolved: a zero may lie on it")
     first = _edges(problem, a, middle, factors, pace)
     return first + _edges(problem, middle, b, factors, pace)
+
+
+def cleared_of(problem: Problem, sigma: complex, radius: float) -> tuple[int, ...]:
+    """Planning: the factors to clear in a model."""
+    return cleared_factors(problem, sigma, radius, REACH)
 
 
 def longest(problem: Problem, sigma: complex) -> float:

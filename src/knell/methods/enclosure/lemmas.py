@@ -29,16 +29,17 @@ The source adds ``ρ'(∫g, ∫e^{μ₋s} + (r-μ₋)∫g)`` over the piece, whe
 ``∫e^{μ₋s} <= δ max(1, e^{μ₋δ})``, ``<= 1/|μ₋|`` for ``μ₋ < 0``. From one piece to the next ``|z|`` grows by
 ``|λ - λ_next||e|``.
 
-Every ``λ`` gives a true bound, at each ``σ`` a different one if that helps. ``λ = λ₀ + λ₁τ`` is taken, with the root of
-``λ² + Bλ + C/P = 0`` nearer to 0 and its slope in ``τ`` in the middle of the piece: the local exponent of the slow
-solution. ``-(B+λ)`` is then that of the fast one, and ``c`` holds only what varies over the piece and to second order in ``τ``.
-With ``B = B₀ + B₁τ``, ``C/P = C₀ + C₁τ + C₂τ²`` and ``|τ| <= 1``, over the piece
+Every ``λ`` gives a true bound, at each ``σ`` a different one if that helps. ``λ = λ₀ + λ₁τ`` is taken, with the root
+of ``λ² + Bλ + C/P = 0`` nearer to 0 and its slope in ``τ`` in the middle of the piece: the local exponent of the
+slow solution. ``-(B+λ)`` is then that of the fast one, and ``c`` holds only what varies over the piece and to second
+order in ``τ``. With ``B = B₀ + B₁τ``, ``C/P = C₀ + C₁τ + C₂τ²`` and ``|τ| <= 1``, over the piece
 
     c >= |(B₀+λ₀)λ₀ + C₀| + |(B₀+λ₀)λ₁ + (B₁+λ₁)λ₀ + C₁| + |(B₁+λ₁)λ₁ + C₂|,
     r >= Re(-(B₀+λ₀)) + |B₁+λ₁|,      Re λ <= Re λ₀ + |λ₁|.
 
-No smallness is needed, and where the path runs so that the unwanted solution dies (``r < 0``), errors die with it. So
-one solution is carried with its error beside it, and no fundamental matrix, whose fast column would cost twice the terms.
+No smallness is needed, and where the path runs so that the unwanted solution dies (``r < 0``), errors die with it.
+So one solution is carried with its error beside it, and no fundamental matrix, whose fast column would cost twice
+the terms.
 
 **Regular horizon** (``P = ξG``, ``G ≠ 0``; ``e = O(ξ^{m+1})`` analytic). For ``ψ = Pe'``:
 ``ψ' = -(2σκ/G)ψ/ξ - Ce - R``, hence ``|ψ|' <= α₊|ψ|/ξ + c|e| + ρξ^m`` with
