@@ -132,8 +132,6 @@ def _series(
             if bool(moment.rad() > 10 * tolerance):
                 raise Starved("rounding spreads beyond the tolerance")
             return value.mid(), (moment / x).mid()
-    if bool(abs(term).rad() * longest > tolerance):
-        raise Starved("rounding keeps the terms of a local series above the tolerance")
     raise SeriesTooLong("a local series has not fallen below the tolerance")
 
 
@@ -205,7 +203,7 @@ def _ingoing(side: _Side, sigma: acb) -> tuple[acb, acb]:
         x = 0.45 * gap * cmath.exp(1j * (recessive if gap < 0.25 else cmath.phase(x_meeting)))
         tolerance = arb(10) ** (-side.digits - _EXTRA_DIGITS)
         value, slope = _series(local(side.equation, 1, -1), sigma, acb(x), (1,), 1, tolerance)
-    span = cmath.log(x_meeting / x)
+    span = complex(math.log(abs(x_meeting / x)), cmath.phase(x_meeting) - cmath.phase(x))
     pieces = max(1, math.ceil(abs(span) / 0.35))
     targets = [1 - x * cmath.exp(span * k / pieces) for k in range(1, pieces)] + [side.route.meeting]
     check_homotopy(side.plan, [1 - x, *targets], 1)

@@ -27,7 +27,10 @@ class CountFailed(ArithmeticError):
 
 @dataclass(frozen=True)
 class Region:
-    """``-PAST_THE_AXIS <= Re Mω <= right``, ``-depth <= Im Mω <= 0`` less the square of half-side ``hole`` about 0."""
+    """``-PAST_THE_AXIS <= Re Mω <= right``, ``-depth <= Im Mω <= 0`` less the corner about the branch point 0.
+
+    The corner is what has ``Re Mω < hole`` and ``Im Mω > -hole``.
+    """
 
     right: float
     depth: float
@@ -40,8 +43,8 @@ class Region:
 
     def contains(self, omega: NDArray[np.complex128]) -> NDArray[np.bool_]:
         x, y = omega.real, omega.imag
-        outside_hole = np.maximum(np.abs(x), np.abs(y)) > self.hole
-        return (x > self.left) & (x <= self.right) & (y >= -self.depth) & (y <= 0) & outside_hole
+        outside_corner = (x >= self.hole) | (y <= -self.hole)
+        return (x > self.left) & (x <= self.right) & (y >= -self.depth) & (y <= 0) & outside_corner
 
     @property
     def outline(self) -> list[complex]:
@@ -57,17 +60,17 @@ class Region:
         ]
 
 
-def count_zeros(region: Region, values: Callable[[NDArray[np.complex128]], NDArray[np.complex128]]) -> int:
-    """Zeros of an analytic function in the region: the winding of its values round the outline.
+def winding(region: Region, logarithms: Callable[[NDArray[np.complex128]], NDArray[np.complex128]]) -> int:
+    """Zeros less poles, in the region, of a function that is meromorphic there: how often it winds along the outline.
 
-    ``values(ω)`` may carry any positive factor. Points are added until the argument turns by less
-    than one radian between neighbours; the zeros nearest to the outline decide how many. Raises
-    `CountFailed` where that does not happen.
+    ``logarithms(ω)`` gives logarithms of its values, on any branch. Points are added until the argument turns
+    by less than one radian between neighbours; what lies nearest to the outline decides how many.
+    Raises `CountFailed` where that does not happen.
     """
     points = np.concatenate([_between(a, b) for a, b in pairwise([*region.outline, region.outline[0]])])
-    d = values(points)
+    argument = logarithms(points).imag
     for _ in range(_ROUNDS):
-        turns = np.angle(np.roll(d, -1) / d)
+        turns = np.angle(np.exp(1j * (np.roll(argument, -1) - argument)))
         wide = ~(np.abs(turns) <= _TURN)
         if not np.any(wide):
             return round(float(np.sum(turns)) / (2 * np.pi))
@@ -78,7 +81,7 @@ def count_zeros(region: Region, values: Callable[[NDArray[np.complex128]], NDArr
             break
         added = (points[at] + gap * np.arange(1, _PARTS + 1)[:, None]).T.ravel()
         points = np.insert(points, np.repeat(at + 1, _PARTS), added)
-        d = np.insert(d, np.repeat(at + 1, _PARTS), values(added))
+        argument = np.insert(argument, np.repeat(at + 1, _PARTS), logarithms(added).imag)
     raise CountFailed("the argument of D could not be followed along the outline")
 
 

@@ -12,9 +12,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from knell.methods.match.geometry import MAIN_ROUTE, MatchRoute
-from knell.methods.match.region import Region, count_zeros
-from knell.methods.match.solutions import Matcher
-from knell.methods.match.tiles import Seed, Values, seeds
+from knell.methods.match.region import PAST_THE_AXIS, Region, winding
+from knell.methods.match.solutions import Matcher, off_poles
+from knell.methods.match.tiles import Logarithms, Seed, seeds
 from knell.physics.equation import Equation
 from knell.physics.landmarks import Window
 
@@ -44,36 +44,59 @@ class SearchResult:
         return self.counted == len(self.zeros)
 
 
-def search(equation: Equation, window: Window, route: MatchRoute = MAIN_ROUTE) -> SearchResult:
+def search(
+    equation: Equation, window: Window, route: MatchRoute = MAIN_ROUTE, extended: Logarithms | None = None
+) -> SearchResult:
     """All zeros of D in the window (``equation`` over doubles).
 
-    Raises `Unresolved` or `NeedsPrecision` where doubles are not enough, `CountFailed` when
+    Where doubles are noise, ``extended`` gives logarithms of D in more precision. Raises `Unresolved` or
+    `NeedsPrecision` where there is none and doubles are not enough, `CountFailed` when
     the outline cannot be followed.
     """
     matcher, region = Matcher(equation, route), Region.of(window)
     to_sigma = 1j / float(equation.mass)
 
-    def values(omega: Complexes, scale_at: Complexes) -> Complexes:
-        return matcher.wronskian(omega * to_sigma, scale_at * to_sigma)
+    def logarithms(omega: Complexes) -> Complexes:
+        return matcher.log_wronskian(omega * to_sigma)
 
-    polished, error = _polish(seeds(region, values), values)
+    polished, error = _polish(seeds(region, logarithms, extended), logarithms)
     zeros, error = _merge(polished, error)
     inside = region.contains(zeros)
-    counted = count_zeros(region, lambda omega: values(omega, omega))
-    return SearchResult(zeros[inside], error[inside], counted)
+    return SearchResult(zeros[inside], error[inside], count(matcher, region))
 
 
-def _polish(found: list[Seed], values: Values) -> tuple[Complexes, NDArray[np.float64]]:
+def count(matcher: Matcher, region: Region) -> int:
+    """Zeros of ``D/Γ(1 - s)`` in the region: the winding of D and the number of its poles ``s = 1, 2, …``.
+
+    Near the extremal end the argument of Γ turns too fast to be followed. Poles next to where the
+    outline crosses the axis are multiplied out.
+    """
+    to_sigma = 1j / float(matcher.equation.mass)
+    spacing = matcher.horizon_slope / 2 * float(matcher.equation.mass)
+    depths = spacing * np.arange(1, int(region.depth / spacing) + 3) if spacing else np.zeros(0)
+    reach = max(1.5 * spacing, PAST_THE_AXIS)
+    near = (np.abs(depths - region.depth) < reach) | (np.abs(depths - region.hole) < reach)
+    inside = (depths > region.hole) & (depths <= region.depth)
+
+    def logarithms(omega: Complexes) -> Complexes:
+        sigma = off_poles(omega * to_sigma, matcher.horizon_slope) if spacing else omega * to_sigma
+        factors = sigma / to_sigma - -1j * depths[near, None]
+        return matcher.log_plain_wronskian(sigma) + np.sum(np.log(factors), axis=0)
+
+    # A factor put in for a pole outside adds no zero inside.
+    return winding(region, logarithms) + int(np.sum(inside & ~near))
+
+
+def _polish(found: list[Seed], logarithms: Logarithms) -> tuple[Complexes, NDArray[np.float64]]:
     """Newton for all roots together; the slopes are those of the models, good to many digits already."""
     omega = np.asarray([seed.omega for seed in found], dtype=complex)
-    slope = np.asarray([seed.slope for seed in found], dtype=complex)
-    scale_at = np.asarray([seed.scale_at for seed in found], dtype=complex)
+    log_slope = np.asarray([seed.log_slope for seed in found], dtype=complex)
     error = np.full(omega.shape, np.inf)
     active = np.arange(omega.size)
     for _ in range(_POLISH_ROUNDS):
         if not active.size:
             break
-        step = values(omega[active], scale_at[active]) / slope[active]
+        step = np.exp(logarithms(omega[active]) - log_slope[active])
         omega[active] -= step
         size = np.abs(step)
         # Once rounding decides, steps stop shrinking: the last one is the error.

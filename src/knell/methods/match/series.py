@@ -17,7 +17,6 @@ coefficients and never overflows.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -69,47 +68,6 @@ def operator_at(equation: Equation, centre: Any) -> Operator:
     """The operator about an ordinary point ``u = centre``, a number or one per frequency."""
     p, H, Q, W = (polynomial.shift(part, centre) for part in (equation.p, equation.H, equation.Q, equation.W))
     return operator_of(LocalEquation(tuple(p), tuple(H), tuple(Q), tuple(W)))
-
-
-def operator_beyond(local: LocalEquation, gap: float, terms: int) -> Operator:
-    """The operator at a regular horizon in ``y = x/(x + gap)``, which sends the root ``x = -gap`` to infinity.
-
-    With ``p = x(x+δ)g₂`` the equation is ``(δ y g₂ φ_y)_y + 2σK φ_y + δ(1-y)^-2 C φ = 0``, its
-    coefficients power series in ``y`` (``x = δy/(1-y)``), here up to ``terms``. For low degrees it
-    is multiplied by the power of ``1-y`` that makes it polynomial and the recurrence short; for high
-    ones that power would let rounding errors grow like its degree-th power of the term's index.
-    """
-    # x^j = δ^j y^j (1-y)^-j, whose coefficients are positive: nothing cancels.
-    powers = np.zeros((len(local.p) + 3, terms))
-    powers[0, 0] = 1.0
-    for j in range(1, len(powers)):
-        powers[j, 1:] = np.cumsum(powers[j - 1])[:-1]
-    weights = gap ** np.arange(len(powers), dtype=float)
-    g = polynomial.divide_by_root(list(local.p)[1:], -gap)
-
-    def in_y(part: Sequence[float]) -> NDArray[np.float64]:
-        return np.asarray(part) @ (weights[: len(part), None] * powers[: len(part)])
-
-    def over_square(part: Sequence[float]) -> NDArray[np.float64]:
-        return np.cumsum(np.cumsum(in_y(part)))
-
-    y_g = np.concatenate([[0.0], in_y(g)])[:terms]
-    K = list(local.K)
-    series = [
-        gap * y_g,
-        gap * y_g[1:] * np.arange(1, terms),
-        2 * in_y(K),
-        -gap * over_square(local.W),
-        gap * over_square(polynomial.derivative(K)),
-        -gap * over_square(local.Q),
-    ]
-    degree = len(local.p) - 1
-    if degree <= 10:
-        factor = [1.0]
-        for _ in range(degree):
-            factor = polynomial.multiply(factor, [1.0, -1.0])
-        series = [np.convolve(part, factor)[: degree + 2] for part in series]
-    return _stack(*(list(part) for part in series))
 
 
 def _scaled(operator: Operator, h: Any, order: int) -> NDArray[Any]:
