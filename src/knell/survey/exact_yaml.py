@@ -117,7 +117,8 @@ def show_value(value: Any) -> str:
     if value is None:
         return "null"
     if isinstance(value, str):
-        return value if read_scalar(value) == value and re.fullmatch(r"[\w./-]+", value) else repr(value)
+        plain = read_scalar(value) == value and re.fullmatch(r"[\w./-]+", value)
+        return value if plain else "'" + value.replace("'", "''") + "'"
     if isinstance(value, dict):
         return "{" + ", ".join(f"{key}: {show_value(item)}" for key, item in value.items()) + "}"
     if isinstance(value, (list, tuple)):
