@@ -20,6 +20,7 @@ from knell.errors import ConfigError, FileError, KnellError
 
 COMMANDS = {
     "modes": "quasinormal modes of one black hole, with digits and verdict",
+    "prove": "modes of one black hole proven in ball arithmetic, or the complete list of a window",
     "trace": "how a file of the survey was made, and the command that makes it again",
     "config": "check a config; the workflow writes it down completed",
 }
