@@ -42,9 +42,9 @@ def run(arguments: argparse.Namespace) -> None:
     if arguments.window is not None and arguments.window <= EXCLUDED_SQUARE:
         raise InputError(f"--window {arguments.window}: must be above {float(EXCLUDED_SQUARE)}, such as 1.5")
 
-    from knell.survey import solve
+    from knell.survey import one_hole
 
-    modes = solve.modes(
+    modes = one_hole.modes(
         point,
         overtones=None if arguments.window is not None else arguments.overtones or OVERTONES,
         window_depth=arguments.window,

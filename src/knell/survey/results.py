@@ -70,7 +70,7 @@ def read_point(folder: CellFolder, ladder: Iterable[tuple[int, int]]) -> PointRe
         window=search["window"],
         solver=search["solver"],
         modes={
-            key: _evidence(mode, witnesses.get(key, {}), {rung: modes.get(key) for rung, modes in aim.items()})
+            key: evidence_of(mode, witnesses.get(key, {}), {rung: modes.get(key) for rung, modes in aim.items()})
             for key, mode in (_by_mode(search).items() if ok else ())
         },
     )
@@ -108,7 +108,7 @@ def _run(entry: Mapping[str, str] | None) -> Run:
     return Run(entry["status"], Frequency(entry["re"], entry["im"]) if ok else None)
 
 
-def _evidence(
+def evidence_of(
     mode: Mapping[str, str],
     witness: Mapping[str, Any],
     aim: Mapping[tuple[int, int], Mapping[str, Any] | None],

@@ -9,7 +9,7 @@ used, because hundreds of cells start in processes of their own.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from fractions import Fraction
 from typing import Any
 
@@ -114,6 +114,11 @@ def _decimal(x: float) -> str:
 
 def witness(point: Point, search_document: Mapping[str, Any]) -> dict[str, Any]:
     """The modes of a search by the match over balls (two routes, two precisions) and by the spectral method."""
+    return _body(search_document, modes=witness_modes(point, search_document["modes"]))
+
+
+def witness_modes(point: Point, modes: Iterable[Mapping[str, Any]]) -> list[dict[str, Any]]:
+    """The witnesses' runs for some modes of a search."""
     from knell.methods import spectral_refine as spectral
     from knell.methods.match.digits import refine
     from knell.methods.match.geometry import OTHER_ROUTE
@@ -123,8 +128,8 @@ def witness(point: Point, search_document: Mapping[str, Any]) -> dict[str, Any]:
     problem, tilted = (
         spectral.SpectralProblem.of(background, field, ell, SPECTRAL_DIGITS, tilt) for tilt in (TILT, OTHER_TILT)
     )
-    modes = []
-    for mode in search_document["modes"]:
+    entries = []
+    for mode in modes:
         seed = _seed(mode)
         match = refine(background, field, ell, seed, MATCH_DIGITS)
         better = match.frequency if match.frequency is not None else seed
@@ -135,25 +140,61 @@ def witness(point: Point, search_document: Mapping[str, Any]) -> dict[str, Any]:
             "spectral": spectral.refine(problem, seed),
             "spectral_tilted": spectral.refine(tilted, seed),
         }
-        modes.append(
+        entries.append(
             {
                 "family": mode["family"],
                 "index": mode["index"],
-                **{name: _entry(run.status, run.frequency, run.reason) for name, run in runs.items()},
+                **{name: _run_entry(run) for name, run in runs.items()},
             }
         )
-    return {"point": dict(search_document["point"]), "window": dict(search_document["window"]), "modes": modes}
+    return entries
 
 
 def _seed(mode: Mapping[str, Any]) -> complex:
     return complex(float(mode["re"]), float(mode["im"]))
 
 
-def _entry(status: str, frequency: Any, reason: str) -> dict[str, str]:
+def _run_entry(run: Any) -> dict[str, str]:
     """One run as stored: decimal strings where it is ``ok``, empty ones and a reason where not."""
     from knell.survey.decimals import written
 
-    if status != "ok":
-        return {"status": status, "reason": reason, "re": "", "im": ""}
-    text = written(frequency, WRITTEN_DIGITS)
-    return {"status": status, "reason": "", "re": text.re, "im": text.im}
+    if run.status != "ok":
+        return {"status": run.status, "reason": run.reason, "re": "", "im": ""}
+    text = written(run.frequency, WRITTEN_DIGITS)
+    return {"status": "ok", "reason": "", "re": text.re, "im": text.im}
+
+
+def _refused(reason: str) -> dict[str, str]:
+    return {"status": "refused", "reason": reason, "re": "", "im": ""}
+
+
+def cell(point: Point, search_document: Mapping[str, Any], depth: int, precision: int) -> dict[str, Any]:
+    """AIM at one depth and precision for every mode of a search, on two differently tilted contours."""
+    modes = aim_modes(point, search_document["modes"], depth, precision)
+    return _body(search_document, depth=depth, precision=precision, modes=modes)
+
+
+def aim_modes(point: Point, modes: Iterable[Mapping[str, Any]], depth: int, precision: int) -> list[dict[str, Any]]:
+    """AIM's runs for some modes of a search."""
+    from knell.methods import aim
+    from knell.methods.contour_choice import choose
+    from knell.physics.equation import equation_balls
+
+    equation = equation_balls(point.background(), point.field, point.ell, aim.bits_for(precision))
+    plan = equation.map(float)
+    entries = []
+    for mode in modes:
+        seed = _seed(mode)
+        choice = choose(plan, 1j * seed / plan.mass, depth)
+        main, tilted = (
+            _refused(choice.reason)
+            if contour is None
+            else _run_entry(aim.solve(equation, contour, depth, precision, seed))
+            for contour in (choice.main, choice.tilted)
+        )
+        entries.append({"family": mode["family"], "index": mode["index"], **main, "tilted": tilted})
+    return entries
+
+
+def _body(search_document: Mapping[str, Any], **results: Any) -> dict[str, Any]:
+    return {"point": dict(search_document["point"]), "window": dict(search_document["window"]), **results}
