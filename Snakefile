@@ -9,6 +9,20 @@
 include: "workflow/rules/common.smk"
 
 
+wildcard_constraints:
+    window=r"\d+(_\d+)?",
+    point=r"[a-z]+-l\d+-[a-z0-9_-]+",
+    depth=r"\d+",
+    precision=r"\d+",
+
+
+# Too quick to be worth a cluster's queue.
+localrules:
+    all,
+    resolve_config,
+    provenance,
+
+
 rule all:
     input:
         CONFIG.cell_files(),

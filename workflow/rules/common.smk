@@ -5,6 +5,11 @@ import shlex
 import sys
 from pathlib import Path
 
+try:
+    import knell
+except ModuleNotFoundError:
+    sys.exit(f"knell is not installed for {sys.executable}: run `pip install -e .` in the folder of the Snakefile")
+
 from knell.errors import KnellError
 from knell.record import environment, source
 from knell.record.verify import check_files
