@@ -29,7 +29,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from itertools import count
-from math import ceil
+from math import ceil, inf
 from typing import Any
 
 from flint import acb, arb
@@ -165,7 +165,7 @@ def singular_start(segment: Segment, ring: Ring, cut: Cut, irregular: bool, clea
     bounds = singular_suprema(segment, ring.disc, 2 if irregular else 1)
     if irregular and cleared:
         raise WeakBound("there is no factor to clear at an irregular end")
-    known = max([_least_start(bounds, irregular), *cleared])
+    known = max([_least_start(bounds, irregular, cut.longest), *cleared])
     rows = factors(segment, ring)
     # Remainders of these coefficients grow along the recurrence: a higher degree keeps them small while it matters.
     a = _leading_coefficients(segment, ring.raised(known), rows, known, cleared)
@@ -213,11 +213,18 @@ def _leading_coefficients(segment: Segment, ring: Ring, rows: Rows, known: int, 
     return a
 
 
-def _least_start(bounds: tuple[arb, arb, arb, arb], irregular: bool) -> int:
-    """A ``J₀`` for which the lemma's ``d`` should be at least 1/2; the lemma decides whether it applies."""
+def _least_start(bounds: tuple[arb, arb, arb, arb], irregular: bool, longest: int) -> int:
+    """A ``J₀`` for which the lemma's ``d`` should be at least 1/2; the lemma decides whether it applies.
+
+    Raises `WeakBound` where none below ``longest`` would do.
+    """
     alpha, gamma, c, least = (float(x) for x in bounds)
     if irregular:
-        return max(1, ceil(2 * c / max(gamma * least, 1e-30)) - 2)
-    # least (m+1) (m+2-α) >= 2c
-    half = (alpha + 1) / 2
-    return max(1, ceil(alpha), ceil(half - 1 + (half * half + 2 * c / least) ** 0.5))
+        needed = 2 * c / (gamma * least) - 2 if gamma * least > 0 else inf
+    else:
+        # least (m+1) (m+2-α) >= 2c
+        half = (alpha + 1) / 2
+        needed = max(alpha, half - 1 + (half * half + 2 * c / least) ** 0.5) if least > 0 else inf
+    if not needed < longest:
+        raise WeakBound("γ, inf|g| or c leave no power at which the lemma of the singular end applies")
+    return max(1, ceil(needed))
