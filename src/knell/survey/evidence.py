@@ -4,26 +4,26 @@
     between two methods       aim_match  aim_spectral  match_spectral
     of the value with the search in doubles                       search
 
-AIM's best run is the deepest, at its highest precision; ``aim_depth`` compares it with the
-next depth, ``aim_precision`` the two most precise runs of the deepest depth that has two,
-``aim_tilt`` a run with the same run on a second, differently tilted contour. The match's and
-the spectral method's values are the most precise ones.
+AIM's best run is the deepest, at its highest precision. ``aim_depth`` compares it with the
+next depth and ``aim_tilt`` with the same cell on a second, differently tilted contour (or the
+best cell that has both). ``aim_precision`` is the worst agreement of the two most precise runs of
+a depth and contour: they differ by rounding alone. The match's and the spectral method's
+values are the most precise ones.
 
 *Convergence* is the error a run admits. For the match it is the agreement of two precisions, for
-the spectral method that of two tilts. For AIM at one depth it is the best agreement of any run
-of that depth or of a shallower one with the next depth, with the other contour or with another
-method: truncation is an honest excuse, but deepening does not make it worse, and rounding is
-none. A cell that had less precision than it says agrees worse with its neighbours than their
-convergence allows.
-It is unknown where AIM has neither a second depth nor a second tilt, because the agreement
-with another method must not excuse itself.
+the spectral method that of two tilts. For an AIM run it is the best agreement with AIM at
+another depth or on the other contour: truncation differs there, so what the two share is
+not truncated. The contour is chosen anew for each depth, hence a deeper run may be the worse
+one. Rounding is no excuse: a run that is ok says that its precision was enough. An AIM run
+without a second depth or tilt does not know its convergence; the agreement with another
+method must not excuse itself.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
-from itertools import pairwise
+from collections.abc import Iterable
+from dataclasses import dataclass, replace
+from itertools import groupby
 
 from knell.survey.agreement import Frequency, agreement, carried
 
@@ -81,8 +81,8 @@ class Evidence:
     @property
     def best_aim(self) -> Frequency | None:
         """The deepest AIM run that is ok, at its highest precision."""
-        ladder = _ladder((run.depth, run.precision, run.plain) for run in self.aim)
-        return ladder[0].value if ladder else None
+        plain = [rung for rung in _ladder(self.aim) if not rung.tilted]
+        return plain[0].value if plain else None
 
     @property
     def best_match(self) -> Frequency | None:
@@ -107,24 +107,15 @@ def compare(evidence: Evidence) -> dict[str, Link]:
     match, spectral = evidence.best_match, evidence.spectral.value
     precise = _digits(evidence.match.value, evidence.match_more_precise.value)
     tilts = _digits(evidence.spectral_tilted.value, spectral)
-    plain = _ladder((run.depth, run.precision, run.plain) for run in evidence.aim)
-    tilted = _ladder((run.depth, run.precision, run.tilted) for run in evidence.aim)
-    tilt_pair = _same_cell(tilted, plain)
-    expected = _expected(plain, tilted, (match, spectral))
-    expected_tilted = _expected(tilted, plain, (match, spectral))
-
-    def rungs(pair: tuple[_Rung, _Rung] | None, first: Mapping[int, float] = expected) -> Link | None:
-        return pair and _link(pair[0].value, pair[1].value, first.get(pair[0].depth), expected.get(pair[1].depth))
-
-    def best(other: Frequency | None, convergence: float | None) -> Link | None:
-        return _link(plain[0].value, other, expected.get(plain[0].depth), convergence) if plain else None
-
+    rungs = _ladder(evidence.aim)
+    best = next((rung for rung in rungs if not rung.tilted), None)
+    aim, convergence = (best.value, _convergence(best, rungs)) if best else (None, None)
     links = {
-        "aim_depth": rungs(_two_deepest(plain)),
-        "aim_precision": rungs(_two_most_precise(plain)),
-        "aim_tilt": rungs(tilt_pair, expected_tilted),
-        "aim_spectral": best(spectral, tilts),
-        "aim_match": best(match, precise),
+        "aim_depth": _pair(_two_deepest(rungs), rungs),
+        "aim_precision": _two_most_precise(rungs),
+        "aim_tilt": _pair(_two_tilts(rungs), rungs),
+        "aim_spectral": _link(aim, spectral, convergence, tilts),
+        "aim_match": _link(aim, match, convergence, precise),
         "match_path": _link(evidence.match_other_path.value, evidence.match.value, precise),
         "match_precision": _link(evidence.match.value, evidence.match_more_precise.value),
         "match_spectral": _link(spectral, match, precise, tilts),
@@ -135,60 +126,64 @@ def compare(evidence: Evidence) -> dict[str, Link]:
 
 @dataclass(frozen=True)
 class _Rung:
-    """One AIM run that is ok, on one contour."""
+    """One AIM run that is ok."""
 
     depth: int
     precision: int
+    tilted: bool
     value: Frequency
 
+    @property
+    def truncation(self) -> tuple[int, bool]:
+        """Runs that differ here have independent truncation errors, others differ by rounding alone."""
+        return self.depth, self.tilted
 
-def _ladder(runs: Iterable[tuple[int, int, Run]]) -> list[_Rung]:
-    """The runs that are ok, best first."""
-    rungs = [_Rung(depth, precision, run.value) for depth, precision, run in runs if run.value is not None]
-    return sorted(rungs, key=lambda rung: (rung.depth, rung.precision), reverse=True)
+
+def _ladder(runs: Iterable[AimRun]) -> list[_Rung]:
+    """The runs that are ok: deepest first, the plain contour before the tilted, precise before less so."""
+    rungs = [
+        _Rung(run.depth, run.precision, tilted, each.value)
+        for run in runs
+        for tilted, each in ((False, run.plain), (True, run.tilted))
+        if each.value is not None
+    ]
+    return sorted(rungs, key=lambda rung: (-rung.depth, rung.tilted, -rung.precision))
 
 
-def _two_deepest(ladder: list[_Rung]) -> tuple[_Rung, _Rung] | None:
-    """The next depth's rung, at the best one's precision if that is ok, and the best."""
-    shallower = [rung for rung in ladder if rung.depth < ladder[0].depth]
+def _two_deepest(rungs: list[_Rung]) -> tuple[_Rung, _Rung] | None:
+    """On the plain contour the next depth's rung, at the best one's precision if that is ok, and the best."""
+    plain = [rung for rung in rungs if not rung.tilted]
+    shallower = [rung for rung in plain if rung.depth < plain[0].depth]
     if not shallower:
         return None
     next_depth = [rung for rung in shallower if rung.depth == shallower[0].depth]
-    same_column = [rung for rung in next_depth if rung.precision == ladder[0].precision]
-    return (same_column or next_depth)[0], ladder[0]
+    same_column = [rung for rung in next_depth if rung.precision == plain[0].precision]
+    return (same_column or next_depth)[0], plain[0]
 
 
-def _two_most_precise(ladder: list[_Rung]) -> tuple[_Rung, _Rung] | None:
-    """The less and the more precise rung of the deepest depth that has both."""
-    return next(((less, more) for more, less in pairwise(ladder) if more.depth == less.depth), None)
-
-
-def _same_cell(tilted: list[_Rung], plain: list[_Rung]) -> tuple[_Rung, _Rung] | None:
+def _two_tilts(rungs: list[_Rung]) -> tuple[_Rung, _Rung] | None:
     """The tilted and the plain rung of the best cell that has both."""
-    others = {(rung.depth, rung.precision): rung for rung in tilted}
-    pairs = ((others.get((rung.depth, rung.precision)), rung) for rung in plain)
-    return next(((other, rung) for other, rung in pairs if other is not None), None)
+    tilted = {(rung.depth, rung.precision): rung for rung in rungs if rung.tilted}
+    plain = ((rung, (rung.depth, rung.precision)) for rung in rungs if not rung.tilted)
+    return next(((tilted[cell], rung) for rung, cell in plain if cell in tilted), None)
 
 
-def _expected(ladder: list[_Rung], turned: list[_Rung], witnesses: Iterable[Frequency | None]) -> dict[int, float]:
-    """Digits each depth of a ladder can be expected to have; empty where AIM knows nothing of its own error.
+def _two_most_precise(rungs: list[_Rung]) -> Link | None:
+    """The worst agreement of the two most precise rungs over depths and contours: they differ by rounding."""
+    columns = (list(column) for _, column in groupby(rungs, key=lambda rung: rung.truncation))
+    links = [_link(column[1].value, column[0].value) for column in columns if len(column) > 1]
+    worst = min((link for link in links if link), key=lambda link: link.digits, default=None)
+    return worst and replace(worst, whole=True)
 
-    ``turned`` is the ladder on the other contour.
-    """
-    depths = sorted({rung.depth for rung in ladder})
-    other_contour = {(rung.depth, rung.precision): rung.value for rung in turned}
-    if len(depths) < 2 and not any((rung.depth, rung.precision) in other_contour for rung in ladder):
-        return {}
-    others = [value for value in witnesses if value is not None]
-    expected, best = {}, 0.0
-    for depth, deeper in zip(depths, [*depths[1:], None], strict=True):
-        beyond = others + [rung.value for rung in ladder if rung.depth == deeper]
-        for rung in (rung for rung in ladder if rung.depth == depth):
-            turned_value = other_contour.get((rung.depth, rung.precision))
-            compared = beyond if turned_value is None else [*beyond, turned_value]
-            best = max([best, *(agreement(rung.value, other) for other in compared)])
-        expected[depth] = best
-    return expected
+
+def _convergence(rung: _Rung, rungs: list[_Rung]) -> float | None:
+    """The best agreement of ``rung`` with one of another depth or contour; None where there is none."""
+    others = (other for other in rungs if other.truncation != rung.truncation)
+    return max((agreement(rung.value, other.value) for other in others), default=None)
+
+
+def _pair(pair: tuple[_Rung, _Rung] | None, rungs: list[_Rung]) -> Link | None:
+    return pair and _link(pair[0].value, pair[1].value, *(_convergence(rung, rungs) for rung in pair))
 
 
 def _digits(a: Frequency | None, b: Frequency | None) -> float | None:

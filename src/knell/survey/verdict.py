@@ -4,10 +4,10 @@
 with status ``ok`` take part.
 
 An agreement is *explained* when the convergence of the weaker of its two runs, or the digits
-these write out, account for it to within `SLACK` digits. Explained and below the required
-digits, an agreement with another method is *excused*: that run has not got there, which says
-nothing against the mode. An agreement that is not explained though both convergences are
-known is a *contradiction*: one run is wrong, and nothing says which.
+these write out, account for it to within `SLACK` digits. Below the required digits, an
+agreement with another method that is explained is *excused*: that run has not got there, which
+says nothing against the mode. Below the required digits, any agreement that is not explained
+though both convergences are known is a *contradiction*: one run is wrong, and nothing says which.
 
 Each *basis* has its agreements: ``aim`` the two deepest, the two most precise, the two tilts,
 AIM-spectral and AIM-match; ``match`` two paths, two precisions, match-spectral and AIM-match.
@@ -32,7 +32,7 @@ from enum import IntEnum
 from knell.survey.agreement import Frequency, agreement
 from knell.survey.evidence import AGREEMENTS, Evidence, Link, compare
 
-# The difference of two depths is random about the error: it is 30 times smaller once in a thousand.
+# A difference of two runs falls short of their error by a factor of 30 once in a thousand.
 SLACK = 1.5
 SAME_MODE = 4.0
 # A genuine mode keeps at least three digits when the tilt or the path changes; a root of the cut keeps none.
@@ -117,13 +117,14 @@ def judge(
 def _roles(links: Mapping[str, Link], basis: str, required_digits: float) -> dict[str, str]:
     roles = {}
     for name, link in links.items():
+        short = link.digits < required_digits
         explained = link.digits >= link.allowed - SLACK
-        if link.whole and not explained:
+        if short and link.whole and not explained:
             roles[name] = "contradiction"
         elif name in _OWN[basis]:
             roles[name] = "counted"
         elif name in _CROSS[basis]:
-            roles[name] = "excused" if explained and link.digits < required_digits else "counted"
+            roles[name] = "excused" if short and explained else "counted"
         else:
             roles[name] = "beside"
     return roles
