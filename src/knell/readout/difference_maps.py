@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import numpy as np
 import xarray as xr
+from matplotlib.artist import Artist
 from matplotlib.axes import Axes
 from matplotlib.cm import ScalarMappable
 from matplotlib.colors import CenteredNorm, Normalize
@@ -74,7 +75,7 @@ def _panel(axes: Axes, dataset: xr.Dataset, name: str, ells: list[int], norm: No
     written = verdict.shape[1] <= _MOST_COLUMNS_WITH_NUMBERS
     for row, column in np.ndindex(verdict.shape):
         if shown[row, column]:
-            _write_number(axes, (column, row), shift[row, column], norm, written)
+            _write_number(axes, (column, row), float(shift[row, column]), norm, written)
         elif verdict[row, column]:
             _hatch(axes, (column, row), marks.letter(verdict[row, column]))
     _label_axes(axes, dataset, ells)
@@ -140,7 +141,8 @@ def _colour_bar(figure: Figure, block: list[np.ndarray], norm: Normalize, label:
 def _legend(figure: Figure, verdict: xr.DataArray) -> None:
     patch = Patch(facecolor="white", edgecolor=style.GREY, hatch=style.HATCH)
     meaning = marks.legend_text(verdict)
-    handles, texts = [patch], [f"not settled ({meaning or 'none here'})"]
+    handles: list[Artist] = [patch]
+    texts = [f"not settled ({meaning or 'none here'})"]
     if verdict.sizes["coupling"] > _MOST_COLUMNS_WITH_NUMBERS:
         handles.append(Line2D([], [], marker="+", color="black", linestyle=""))
         texts.append("positive shift")

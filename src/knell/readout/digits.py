@@ -106,8 +106,8 @@ def _legend(axes: Axes | None, figure: Figure, dataset: xr.Dataset) -> None:
     if axes is not None:
         axes.legend(list(entries.values()), list(entries), loc="center", title=title, title_fontsize=7)
         return
-    place = {"loc": "outside lower center", "ncols": 3}
-    figure.legend(list(entries.values()), list(entries), title=title, title_fontsize=7, **place)
+    below = figure.legend(list(entries.values()), list(entries), loc="outside lower center", ncols=3, title=title)
+    below.get_title().set_fontsize(7)
 
 
 def _reasons(dataset: xr.Dataset) -> str:

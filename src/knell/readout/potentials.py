@@ -9,6 +9,7 @@ where null rays circle; the peak meets it only as ``ℓ`` grows.
 from __future__ import annotations
 
 from fractions import Fraction
+from typing import Any
 
 import numpy as np
 import xarray as xr
@@ -28,8 +29,9 @@ from knell.readout import marks, style
 _PANELS_PER_ROW = 2
 _FARTHEST = 6.0
 _POINTS = 600
-_PEAK = {"marker": "^", "markersize": 5, "markeredgecolor": "black", "markeredgewidth": 0.4, "linestyle": ""}
-_RING = {"marker": "o", "markersize": 4, "markeredgecolor": "black", "markeredgewidth": 0.4, "linestyle": ""}
+_EDGE: dict[str, Any] = {"markeredgecolor": "black", "markeredgewidth": 0.4, "linestyle": ""}
+_PEAK: dict[str, Any] = {"marker": "^", "markersize": 5, **_EDGE}
+_RING: dict[str, Any] = {"marker": "o", "markersize": 4, **_EDGE}
 
 Doubles = NDArray[np.float64]
 
@@ -66,7 +68,7 @@ def draw(dataset: xr.Dataset) -> Figure:
     figure = style.new_figure(2.1 * rows + 0.6)
     grid = figure.subplots(rows, columns, squeeze=False, sharex=True, sharey="row")
     couplings = [Fraction(str(x)) for x in dataset.coupling_exact.values]
-    norm = Normalize(float(min(0, *couplings)), float(max(1, *couplings)))
+    norm = Normalize(min(0.0, *map(float, couplings)), max(1.0, *map(float, couplings)))
     for axes, (field, exponent) in zip(grid.flat, panels, strict=False):
         ell = marks.ells_of(dataset, field)[0]
         _panel(axes, field, ell, exponent, couplings, norm)
@@ -92,7 +94,7 @@ def _panel(axes: Axes, field: str, ell: int, exponent: int, couplings: list[Frac
     axes.set_xlim(1, _FARTHEST)
 
 
-def _curve(axes: Axes, background: PowerLaw, field: str, ell: int, **look: object) -> None:
+def _curve(axes: Axes, background: PowerLaw, field: str, ell: int, **look: Any) -> None:
     """One potential from its horizon outwards, its peak and the light ring on it."""
     horizon = 1 / equation_floats(background, field, ell).mass
     # Denser near the horizon, where the potential rises.

@@ -100,7 +100,7 @@ def _points(
         marker=marker,
         s=13,
         edgecolors="black",
-        linewidths=np.where(couplings[seen] == 1, _EXTREMAL_EDGE, 0.4),
+        linewidths=[_EXTREMAL_EDGE if coupling == 1 else 0.4 for coupling in couplings[seen]],
         zorder=2,
     )
     axes.plot(values[doubtful].real, values[doubtful].imag, "x", color=style.VERMILION, markersize=6, zorder=3)

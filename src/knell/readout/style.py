@@ -41,7 +41,7 @@ DASHES = ("-", (0, (5, 2)), (0, (1, 1.2)), (0, (6, 2, 1.2, 2)), (0, (3, 1)), (0,
 REQUIRED = (0, (1, 2))
 NEAR_AXIS = ("^", "v", "<", ">")
 # The Schwarzschild mode, from which differences are taken.
-REFERENCE = {"marker": "o", "markersize": 6, "markerfacecolor": "none", "markeredgecolor": BLACK}
+REFERENCE: dict[str, Any] = {"marker": "o", "markersize": 6, "markerfacecolor": "none", "markeredgecolor": BLACK}
 # The palest tenth would be lost on white paper.
 SEQUENTIAL = ListedColormap(mpl.colormaps["cividis"](np.linspace(0, 0.9, 256)), "cividis-dark")
 DIVERGING = "RdBu_r"
@@ -49,7 +49,7 @@ GREY = "#777777"
 # What is not settled: hatched, never coloured.
 HATCH = "/////"
 
-_SETTINGS = {
+_SETTINGS: Any = {
     "font.family": "DejaVu Sans",
     "mathtext.fontset": "dejavusans",
     "font.size": 8,
@@ -102,7 +102,7 @@ def save(figure: Figure, path: str | Path, title: str, record: str = "") -> None
     maker, source = f"knell {__version__}", f"provenance record {record}" if record else ""
     suffix = Path(path).suffix
     if suffix == ".png":
-        metadata = {"Title": title, "Software": maker, "Source": source}
+        metadata: dict[str, str | None] = {"Title": title, "Software": maker, "Source": source}
     elif suffix == ".pdf":
         metadata = {"Title": title, "Creator": maker, "Keywords": source, "CreationDate": None, "ModDate": None}
     else:
