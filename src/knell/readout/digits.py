@@ -102,7 +102,7 @@ def _legend(axes: Axes | None, figure: Figure, dataset: xr.Dataset) -> None:
     entries["all holes"] = Line2D([], [], color=style.GREY, linewidth=0.8)
     required = int(dataset.attrs["required_digits"])
     entries[f"required, {required} digits"] = Line2D([], [], color=style.GREY, linewidth=0.8, linestyle=style.REQUIRED)
-    title = f"Above: cells that gave digits, of all.\nThe others: {_reasons(dataset)}."
+    title = f"Along the top: cells that gave\ndigits, of all. The others: {_reasons(dataset)}."
     if axes is not None:
         axes.legend(list(entries.values()), list(entries), loc="center", title=title, title_fontsize=7)
         return
