@@ -9,7 +9,6 @@ used, because hundreds of cells start in processes of their own.
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterable, Mapping
 from fractions import Fraction
 from typing import Any
@@ -156,17 +155,12 @@ def _seed(mode: Mapping[str, Any]) -> complex:
 
 
 def _run_entry(run: Any) -> dict[str, str]:
-    """One run as stored: decimal strings where it is ``ok``, empty ones and a reason where not.
-
-    A run that knows what rounding has left it writes no digit beyond.
-    """
+    """One run as stored: decimal strings where it is ``ok``, empty ones and a reason where not."""
     from knell.survey.decimals import written
 
     if run.status != "ok":
         return {"status": run.status, "reason": run.reason, "re": "", "im": ""}
-    size, rounding = abs(complex(run.frequency)), getattr(run, "rounding", 0.0)
-    kept = WRITTEN_DIGITS if rounding <= 0 else min(WRITTEN_DIGITS, math.floor(math.log10(size / rounding)))
-    text = written(run.frequency, kept)
+    text = written(run.frequency, WRITTEN_DIGITS)
     return {"status": "ok", "reason": "", "re": text.re, "im": text.im}
 
 
