@@ -1,9 +1,9 @@
 """The asymptotic iteration method (AIM) at linear cost.
 
-The textbook improved AIM writes ``φ'' = λ_0 φ' + s_0 φ``, iterates ``λ_k``, ``s_k`` and quantises with
-``λ_N s_(N-1) - λ_(N-1) s_N = 0`` at one point (H. Ciftci, R. Hall, N. Saad, J. Phys. A 36, 11807, 2003; improved form:
-H. T. Cho et al., Class. Quantum Grav. 27, 155004, 2010). There ``φ^(k+2) = λ_k φ' + s_k φ``, so ``λ_k`` and ``s_k`` at the point are
-``(k+2)!`` times the Taylor coefficients of the solutions with data (0, 1) and (1, 0), and the condition at depth ``N`` is
+The textbook AIM writes ``φ'' = λ_0 φ' + s_0 φ``, differentiates to ``φ^(k+2) = λ_k φ' + s_k φ`` and quantises with
+``λ_N s_(N-1) = λ_(N-1) s_N`` at one point (H. Ciftci, R. Hall, N. Saad, J. Phys. A 36, 11807, 2003; improved form:
+H. T. Cho et al., Class. Quantum Grav. 27, 155004, 2010). So ``s_k`` and ``λ_k`` at the point are ``(k+2)!`` times the
+Taylor coefficients ``a``, ``b`` of the solutions with data (1, 0) and (0, 1), and the condition at depth ``N`` is
 
     a_(N+1) b_(N+2) - a_(N+2) b_(N+1) = 0.
 
@@ -24,14 +24,13 @@ from flint import acb, acb_mat, ctx
 from knell.methods.aim_recurrence import Columns, columns, taylor_pair
 from knell.methods.aim_rounding import determinant_error
 from knell.methods.contour import Contour, obstacle, pull_back
-from knell.methods.contour_choice import choose
 from knell.physics.equation import Equation
 
 GOAL_DIGITS = 32
 REQUIRED_DIGITS = 14
 _EVALUATIONS = 12
 _SECOND_POINT = 1e-9
-# The root of the wanted mode is this near to a seed of eight digits, relative, or AIM does not see the mode at this depth.
+# AIM sees the mode at this depth if it has a root this near to the seed, relative.
 _NEIGHBOURHOOD = 0.02
 _SMALL = 1e-6
 
@@ -40,10 +39,10 @@ _SMALL = 1e-6
 class AimRun:
     """One mode by AIM on one contour.
 
-    ``status``: ``ok``; ``starved``, rounding leaves fewer digits than required; ``refused``, the contour's nearest-singularity
-    condition fails; ``failed``, no root near the seed. ``frequency`` is ``Mω`` where ``ok``, else ``None`` with a
-    ``reason``. ``error`` estimates its error: the larger of ``rounding``, a bound to first order, and the
-    change since three quarters of the depth.
+    ``status``: ``ok``; ``starved``, rounding leaves fewer digits than required; ``refused``, the contour's
+    nearest-singularity condition fails; ``failed``, no root near the seed. ``frequency`` is ``Mω`` where ``ok``, else
+    ``None`` with a ``reason``. ``error`` estimates its error: the largest of ``rounding``, a bound to first order, of
+    the secant's own error, and of the change since three quarters of the depth.
     """
 
     status: str
@@ -110,8 +109,8 @@ def solve(
 ) -> AimRun:
     """The root of the quantisation condition nearest to ``seed`` (``Mω``), by the secant method.
 
-    ``equation`` is over balls good to ``digits``. The iteration aims at ``goal`` digits; fewer than ``required`` left by
-    rounding is ``starved``. Raises `ValueError` for a depth below 1.
+    ``equation`` is over balls good to ``digits``. The iteration aims at ``goal`` digits; fewer than ``required`` left
+    by rounding is ``starved``. Raises `ValueError` for a depth below 1.
     """
     if depth < 1:
         raise ValueError(f"depth {depth}: must be 1 or more")
@@ -138,23 +137,6 @@ def solve(
         return AimRun("ok", (trail.root / to_sigma).mid(), error, rounding)
 
 
-def solve_on_two(
-    floats: Equation, balls: Equation, depth: int, digits: int, seed: complex, required: int = REQUIRED_DIGITS
-) -> tuple[AimRun, AimRun]:
-    """One mode on the contour chosen for it and on the differently tilted second one.
-
-    The same equation over doubles (for the choice) and over balls; a contour that cannot be had is a run that is ``refused``.
-    """
-    choice = choose(floats, seed * 1j / float(floats.mass), depth)
-    main, tilted = (
-        AimRun("refused", reason=choice.reason)
-        if contour is None
-        else solve(balls, contour, depth, digits, seed, required)
-        for contour in (choice.main, choice.tilted)
-    )
-    return main, tilted
-
-
 def _starved(digits: int, depth: int) -> str:
     return f"{digits} digits are too few for depth {depth}: rounding swamps the determinant"
 
@@ -163,8 +145,8 @@ def _starved(digits: int, depth: int) -> str:
 class Trail:
     """A secant iteration: determinants in order, the next point ``root``, a ``reason`` where it failed.
 
-    ``step_error`` is the expected error of the root as a zero of the determinant, ``change`` how far it moved since the
-    shallower depth.
+    ``step_error`` is the expected error of the root as a zero of the determinant, ``change`` how far it moved since
+    the shallower depth.
     """
 
     values: list[Determinant]

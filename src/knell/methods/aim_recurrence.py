@@ -5,11 +5,11 @@ With ``φ = Σ a_k y^k`` the coefficient of ``y^(k-2)`` of the equation gives, f
     P_0 k (k-1) a_k = - Σ_j [P_j m(m-1) + R_(j-1) m + S_(j-2)] a_m,      j = 1 … L,
 
 whose bracket is quadratic in ``k``. The sum is one small matrix product for both solutions: the last ``L``
-coefficients live in a ring of ``L`` rows, each position of the ring has its row of brackets, and a row moves on by ``L``
-with two additions of constant differences. The same code runs over FLINT balls and over mpmath numbers.
+coefficients live in a ring of ``L`` rows, each position of the ring has its row of brackets, and a row moves on by
+``L`` with two additions of constant differences. The same code runs over FLINT balls and over mpmath numbers.
 
-From one term to the next only midpoints are carried: radii would grow exponentially, far beyond the true
-error (by 1 to 4 bits a term). Each term still comes with the radius of its own step, from which `knell.methods.aim_rounding`
+From one term to the next only midpoints are carried: radii would grow exponentially, far beyond the true error (by
+1 to 4 bits a term). Each term still comes with the radius of its own step, from which `knell.methods.aim_rounding`
 computes the true propagation.
 """
 

@@ -1,8 +1,8 @@
 """All roots of AIM's quantisation condition: what AIM alone sees, artefacts included.
 
-With ``σ`` left symbolic the recurrence of `knell.methods.aim_recurrence` gives polynomials in ``σ``, and the condition
-at depth ``N`` one of degree about ``2N + 2``. Its roots are modes, mirrored modes (``Re ω < 0``), roots not converged at the depth
-and, on the real path, the branch cut on the negative imaginary axis, discretised.
+With ``σ`` left symbolic the recurrence of `knell.methods.aim_recurrence` gives polynomials in ``σ``, and the
+condition at depth ``N`` one of degree ``2N + 2``. Its roots are modes, mirrored modes (``Re ω < 0``), roots not
+converged at the depth and, on the real path, the branch cut on the negative imaginary axis, discretised.
 """
 
 from __future__ import annotations
@@ -16,13 +16,14 @@ from knell.methods.contour import Contour, pull_back
 from knell.physics.equation import Equation
 
 _AGREEMENT = 1e-8
+# From an isolated root to full precision: each step doubles the digits.
+_NEWTON_STEPS = 8
 
 
 def quantisation_polynomial(equation: Equation, contour: Contour, depth: int, bits: int) -> acb_poly:
     """``a_(N+1) b_(N+2) - a_(N+2) b_(N+1)`` as a polynomial in ``σ``; ``equation`` over balls good to ``bits``.
 
-    Midpoints are carried from one step to the next, so it is correctly rounded only to about ``bits`` less what the
-    recurrence loses (0.1 to 0.2 digits a step): compare two values of ``bits``.
+    Midpoints are carried from one step to the next: compare two values of ``bits`` to see what rounding has done.
     """
     with ctx.workprec(bits):
         brackets = columns(pull_back(equation, contour, acb))
@@ -69,27 +70,30 @@ class AimRoots:
 def all_roots(equation: Equation, contour: Contour, depth: int, bits: int) -> AimRoots:
     """All roots of the quantisation condition at a depth, isolated by FLINT.
 
-    Each is kept if it is a root, to `_AGREEMENT` relative, of the polynomial computed with twice the bits too (``equation`` is
-    over balls good to those). Raises `ArithmeticError` when FLINT cannot isolate the roots.
+    Each is refined on the polynomial computed with twice the bits (``equation`` is over balls good to those) and kept
+    if it moves by less than `_AGREEMENT` relative. Raises `ArithmeticError` when FLINT cannot isolate the roots.
     """
-    precise = quantisation_polynomial(equation, contour, depth, 2 * bits)
-    slope = precise.derivative()
     with ctx.workprec(bits):
         rough = _middle(quantisation_polynomial(equation, contour, depth, bits))
         try:
-            found = rough.roots()
+            found = [_refined(x.mid(), rough) for x in rough.roots()]
         except ValueError as error:
             raise ArithmeticError(f"roots at depth {depth}, {bits} bits: {error}") from error
     with ctx.workprec(2 * bits):
+        precise = _middle(quantisation_polynomial(equation, contour, depth, 2 * bits))
+        pairs = [(x, _refined(x, precise)) for x in found]
         to_omega = acb(equation.mass) / acb(0, 1)
-        kept = [x.mid() for x in found if _is_root(x.mid(), precise, slope)]
-        roots = sorted(
-            (x * to_omega for x in kept), key=lambda omega: (-float(omega.imag.mid()), float(omega.real.mid()))
-        )
-    return AimRoots(roots, len(found) - len(kept))
+        kept = [(y * to_omega).mid() for x, y in pairs if bool(abs(y - x) < _AGREEMENT * abs(y))]
+        return AimRoots(sorted(kept, key=_by_damping), len(found) - len(kept))
 
 
-def _is_root(x: acb, polynomial: acb_poly, slope: acb_poly) -> bool:
-    """Whether a Newton step from ``x`` is small."""
-    step = abs(polynomial(x) / slope(x))
-    return bool(step < _AGREEMENT * abs(x))
+def _refined(x: acb, polynomial: acb_poly) -> acb:
+    """Newton from an isolated root."""
+    slope = polynomial.derivative()
+    for _ in range(_NEWTON_STEPS):
+        x = (x - polynomial(x) / slope(x)).mid()
+    return x
+
+
+def _by_damping(omega: acb) -> tuple[float, float]:
+    return (-float(omega.imag), float(omega.real))

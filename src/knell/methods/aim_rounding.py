@@ -5,8 +5,9 @@ the error of ``a_N`` is ``Σ_k G(N, k) η_k``, where ``G(N, ·)`` follows the ad
 
     G(N, N) = 1,     G(N, m) = Σ_j w_j(m+j) G(N, m+j),     w_j(k) = bracket_j(k) / (k(k-1)),
 
-cheap enough in doubles, which need to know ``|G|`` to a few digits only. Plain ball arithmetic would bound the same error by
-the recurrence of absolute values, which grows like ``2^N`` to ``16^N`` beyond the truth.
+cheap in doubles, because ``|G|`` is needed to a few digits only. Plain ball arithmetic would bound the same error by
+the recurrence of absolute values, which grows like ``2^N`` to ``16^N`` beyond the truth. *Measured*: the bound is 3 to
+5 digits above the error made.
 """
 
 from __future__ import annotations

@@ -8,21 +8,30 @@ infinity ``u = 0`` at ``y = 1`` and the horizon ``u = 1`` at ``y = -1``. In the 
 
     far = du/dz at infinity = ks,      near = du/dz at the horizon = s/k.
 
-A negative argument of ``far`` lets ``r`` run to infinity with positive argument. ``far = near = 1`` is the straight
-real path. ``s = 1`` is the arc, a Möbius map: its ends turn in opposite senses. ``k = 1`` is the S-shape, whose ends turn
-in the same sense. Moduli below 1 slow the path down at an end, which makes the expansion converge faster there.
+A negative argument of ``far`` lets ``r`` run to infinity with positive argument. ``far = near = 1`` is the
+straight real path. ``s = 1`` is the arc, a Möbius map: its ends turn in opposite senses. ``k = 1`` is the S-shape,
+whose ends turn in the same sense. Moduli below 1 slow the path down at an end, which makes the expansion converge
+faster there.
 
-The arc covers the same disc of the u-plane as a straight path with the complex expansion point ``u0 = 1/(1 + conj(k)/k)``, but
-expands about its conformal centre; the S-shape does what the cubic ``u = z + (s-1) z(1-z)(1-2z)`` does, with its extra
-preimages of 0 and 1 farther away. *Measured* at depth 200, best tilt of each, digits of the overtones 0, 2, 4 (ℓ = 2):
-MEASURED_TABLE
-The maps are rational, the equation on them polynomial all the same (multiply through), of degree ``n + 4`` (arc)
-or ``2n + 10``.
+The arc ``|k| = 1`` covers the same disc of the u-plane as the straight path with complex expansion point, but
+expands about the disc's conformal centre; the S-shape does what the cubic ``u = z + (s-1) z(1-z)(1-2z)`` does, with
+its extra preimages of 0 and 1 farther away. *Measured*, axial ℓ = 2, digits of overtones 0 / 2 / 4 at depth 200, the
+best of ten expansion points, of sixteen cubics, and what `knell.methods.contour_choice` takes:
 
-Expanding about ``y = 0`` selects the wanted solution when ``y = ±1`` are nearer than every other singular point of the
-equation in y: the images of the other roots of ``f`` and of ``u = ∞`` (two each, one on an arc) and the second
-preimages ``±1/e`` of the ends. Zeros of ``u'``, ``y² = 1/e``, are poles of the coefficients but not of the solutions;
-they are kept outside too, or rounding errors would grow beyond the solutions.
+    n, κ       straight            cubic               rational
+    κ = 0      16 / 12 / 10        25 / 18 / 14        28 / 24 / 27
+    4, 0.75    16 / 10 /  8        25 / 17 / 11        28 / 29 / 24
+    4, 0.9     16 / 10 /  6        25 / 16 /  9        30 / 24 / 17
+    4, 1       18 / 10 /  5        32 / 25 / 18        30 / 28 / 26
+    6, 0.9     16 / 10 /  5        25 / 15 /  8        24 / 17 / 12
+
+The maps are rational; the equation on them is polynomial all the same (multiply through), of degree ``n + 4`` on an
+arc and ``2n + 10`` on others, against ``n + 2`` on the straight path and ``3n + 8`` on the cubic.
+
+Expanding about ``y = 0`` selects the wanted solution when ``y = ±1`` are nearer than every other singular point of
+the equation in y: the images of the other roots of ``f`` and of ``u = ∞`` (two each, one on an arc). The second
+preimages ``±1/e`` of the ends, and the zeros ``y² = 1/e`` of ``u'``, where the coefficients but not the solutions
+have poles, lie outside the disc for every ``s`` with a positive real part.
 """
 
 from __future__ import annotations

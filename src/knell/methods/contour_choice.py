@@ -1,24 +1,29 @@
 """Which contour, and which second one: a rule from the geometry of the singular points.
 
-The rule looks at what each singular point does to the Taylor coefficients about ``y = 0`` at the order of the depth
-``N``: the saddle points of ``exp(-2σ ∫ H/p du) y^-N``, where the exponential is the unwanted second solution.
+The rule looks at what each singular point does to the Taylor coefficients about ``y = 0`` of order ``N``, the depth:
+the saddle points of ``exp(-2σ ∫ H/p du) y^-N``, where the exponential is the unwanted second solution.
 
-- Infinity, and a degenerate horizon, end with slope ``c`` (`Contour.far`, `Contour.near`) and ``g = 1`` or ``f''(1)/2``:
-  saddles ``exp(±4 √(-σN/cg))``. The unwanted solution grows by the upper sign, the wanted one leaves the lower. Best is
-  a slope that is small and turned by a third of the angle of ``-σ`` (what turning wins in phase, slowness decides), within
-  ``|arg(-σ/c)| < π``, beyond which the roles change.
-- At a simple horizon the unwanted solution ``(1-u)^ν``, ``ν = 2σ/|f'(1)|``, leaves ``N^-ν``. With the next root at ``1 + δ``
-  both are the saddles ``ε = -d ± √(d² - 4σ/(g c N))``, ``d = δ/c``, ``g = |f'(1)|/δ``, of ``Nε - ν log(1 + 2d/ε)``, which turn into
-  the degenerate case as ``δ → 0``: near the extremal end the horizon wants the same turn as infinity (S-shape), well
-  below any (arc).
-- Every other singular point leaves ``|y|^-N``, times the strength with which the unwanted solution reaches it, ``exp(2σ|∫H/p du|)``:
-  about ``10^(2|σ|)`` (*measured* on twelve modes and two thousand contours; no finer estimate chose better).
+- Infinity, and a degenerate horizon, end with slope ``c`` (`Contour.far`, `Contour.near`) and ``g = 1`` or
+  ``f''(1)/2``: saddles ``exp(±4 √(-σN/cg))``. The unwanted solution grows by the upper sign, the wanted one leaves the
+  lower. A small slope makes the exponent large, a turn of the slope brings it towards the positive real axis, and
+  ``|arg(-σ/c)| < π`` has to hold, beyond which the two change roles.
+- At a simple horizon the unwanted solution ``(1-u)^ν``, ``ν = 2σ/|f'(1)|``, leaves ``N^-ν``. With the next real root
+  at ``1 + δ`` both are the saddles ``ε = -d ± √(d² - 4σ/(gcN))``, ``d = δ/c``, ``g = |f'(1)|/δ``, of
+  ``Nε - ν log(1 + 2d/ε)``. While ``|4σ/(gcNd²)| < 2`` the one near 0 is the horizon's and the other the next root's;
+  beyond they are the upper and lower one of a degenerate horizon, and its condition on the angle holds. So near the
+  extremal end the horizon wants the same turn as infinity, as on the S-shape; well below it any, as on the arc.
+- Every other singular point leaves ``|y|^-N`` times the strength with which the unwanted solution reaches it, about
+  ``10^(2|σ|)`` (*measured* on twelve modes and two thousand contours; the points' own exponents chose no better).
 
-The error is what is left over, the largest of the lower saddles and of the other points, relative to what the quantisation
-condition can see, the smaller of the two upper ones. The contour is the one, of a fixed fan of slopes, with the most digits
-by this rule at the given depth; more than `ENOUGH` count as no more, and among equals the one is taken that loses fewest
-digits to rounding, the difference of the two upper saddles (an arc, cheaper, may lose `_ARC_BONUS` more). The second contour is chosen alike among those whose tilt differs by
-`TILT_STEP` or more. *Measured*: CHOICE_TABLE
+The error is the largest of what is left over, relative to the smaller of what the two ends let grow. Of a fixed fan
+of contours the rule takes the one with the most digits at the given depth; more than `ENOUGH` count as no more. Among
+equals it takes the one that loses fewest digits to rounding, the difference of the two upper saddles (an arc, which
+costs less, may lose `_ARC_BONUS` more). The second contour is the best of those whose tilt differs by `TILT_STEP` or
+more.
+
+*Measured* on 210 principal modes (n = 3 … 6, κ = 0 … 1, ℓ = 2, 3, overtones 0 to 4), the fewer digits of the two
+contours: at depth 120 ten or more for all but 13, at depth 200 for all but one, at depth 300 for all; the rule's choice
+is within a digit of the best of its fan on average, within 3 at most.
 """
 
 from __future__ import annotations
@@ -46,6 +51,7 @@ _S_DEGREES = (0, 10, 20, 30, 40, 50)
 _CLEARANCE = 1.12
 # Digits of strength of the other points for each unit of |σ|.
 _STRENGTH = 2.0
+_APART = 2.0
 
 Floats = NDArray[np.float64]
 Complexes = NDArray[np.complex128]
@@ -109,7 +115,7 @@ def expected(equation: Equation, sigma: complex, depth: int, k: Complexes, s: Co
 
 
 def _irregular(sigma: complex, depth: int, angle: Floats, size: Floats) -> tuple[Floats, Floats]:
-    """Exponents of the upper and the lower saddle, ``±4 √(-σN/c)``, of an irregular end; the upper is ``-inf`` out of range."""
+    """Exponents of the upper saddle of an irregular end, ``4 √(-σN/c)`` (``-inf`` out of range), and of the lower."""
     phase = np.angle(sigma) - np.pi - angle
     value = 4 * np.sqrt(abs(sigma) * depth / size) * np.cos(phase / 2)
     return np.where(np.abs(phase) < np.pi, value, -np.inf), -value
@@ -124,9 +130,14 @@ def _simple(sigma: complex, depth: int, near: Complexes, steepness: float, roots
         return flat, np.full(near.shape, -np.inf)
     delta = min(beyond) - 1
     d = delta / near
-    root = np.sqrt(d * d - 4 * sigma * delta / (steepness * near * depth))
-    saddles = [(depth * x - nu * np.log(1 + 2 * d / x)).real for x in (-d + root, -d - root)]
-    return np.maximum(*saddles), np.minimum(*saddles)
+    ratio = 4 * sigma * near / (steepness * depth * delta)
+    root = d * np.sqrt(1 - ratio)
+    first, second = ((depth * x - nu * np.log(1 + 2 * d / x)).real for x in (-d + root, -d - root))
+    # From far enough the two roots are one irregular point; from near the first saddle is the horizon's own.
+    valid = np.abs(np.angle(sigma) - np.pi - np.angle(near)) < np.pi
+    merged = np.where(valid, np.maximum(first, second), -np.inf)
+    apart = np.abs(ratio) < _APART
+    return np.where(apart, first, merged), np.where(apart, second, np.minimum(first, second))
 
 
 def choose(equation: Equation, sigma: complex, depth: int) -> Choice:
