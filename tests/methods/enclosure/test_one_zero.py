@@ -111,13 +111,13 @@ def test_proven_discs_hold_the_values_of_direct_integration(n, k, field, ell, om
 
 @pytest.mark.parametrize("n", [22, pytest.param(28, marks=pytest.mark.slow)])
 def test_large_exponents_stay_on_the_sheet_of_the_real_segment(n):
-    # Values found by two unrelated methods; the other sheet's at n = 22, q = 1/21 is 0.368557 - 0.081078i.
-    q, expected = {
-        22: (Fraction(1, 21), 0.372365 - 0.089388j),
-        28: (Fraction(1, 60), 0.3729433070 - 0.0895169038j),
+    # Values found by two unrelated methods; a path on the wrong side gave 0.368557 - 0.081078i at n = 22.
+    q, expected, others = {
+        22: (Fraction(1, 21), 0.372365 - 0.089388j, [0.368557 - 0.081078j]),
+        28: (Fraction(1, 60), 0.3729433070 - 0.0895169038j, []),
     }[n]
     problem = Problem(PowerLaw.from_q(n, q), "axial", 2)
-    for seed in (expected, 0.368557 - 0.081078j):
+    for seed in (expected, *others):
         _, re, im = proven(problem, seed, 12)
         assert abs(complex(float(re), float(im)) - expected) < 1e-6
 
@@ -134,7 +134,8 @@ def test_extremal_scalar_modes():
 def test_near_extremal_fundamentals(k):
     problem = Problem(PowerLaw(4, Fraction(k)), "axial", 2)
     seed = complex(radial.solve(PowerLaw(4, Fraction(97, 100)), "axial", 2, 0.3883 - 0.0783j, 12).frequency)
-    for coupling in ("98/100", k):
+    steps = [step for step in ("98/100", "99/100", "999/1000", "9999/10000") if Fraction(step) < Fraction(k)]
+    for coupling in (*steps, k):
         seed = complex(radial.solve(PowerLaw(4, Fraction(coupling)), "axial", 2, seed, 12).frequency)
     one, *_ = proven(problem, seed)
     assert one.statement.is_mode and Fraction(one.statement.proven_radius) < Fraction(1, 10**30)
@@ -163,9 +164,12 @@ def test_values_and_models_of_the_mismatch_agree_whatever_the_effort(cases, prob
     def holds(problem, sigma, offset, digits, reach):
         R = 1 / 64
         cleared = cleared_factors(problem, sigma, R, 6.0)
-        rough, _ = prepare(
-            problem, exact_point(sigma), R, Effort(digits, int(digits), Stride(reach, 3.5)), cleared
-        ).evaluate(problem)
+        effort = Effort(digits, int(digits), Stride(reach, 3.5))
+        try:
+            rough, _ = prepare(problem, exact_point(sigma), R, effort, cleared).evaluate(problem)
+        except InexactVertex:
+            # Too few bits for the path is a refusal, not a disagreement.
+            reject()
         with ctx.workprec(200):
             z = exact_point(sigma) + exact_point(offset)
         fine, _ = prepare(problem, z, 0.0, Effort(40, 0, Stride(0.4, 10.0)), cleared).evaluate(problem)
