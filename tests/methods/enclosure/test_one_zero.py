@@ -7,7 +7,7 @@ from fractions import Fraction
 
 import pytest
 from flint import acb, arb, ctx
-from hypothesis import assume, given, settings
+from hypothesis import assume, given, reject, settings
 from hypothesis import strategies as st
 
 from knell.methods import radial
