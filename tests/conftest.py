@@ -44,6 +44,7 @@ class SyntheticSurvey:
             "precisions": (40, 80),
             "required_digits": 10,
             "window": Fraction(3, 2),
+            "proofs": "none",
             "results": "results",
         }
         self.config = Config(**{**keys, **changes})
