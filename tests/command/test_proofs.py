@@ -9,8 +9,10 @@ from typing import Any
 import pytest
 
 from knell.command import main
+from knell.command.record import seconds_of_proofs
 from knell.record.provenance import Record
 from knell.record.source import PROVER, SOLVER, source_files, source_hash
+from knell.record.verify import merge_records
 from knell.survey import jsonfile
 from knell.survey.points import Point
 
@@ -70,3 +72,12 @@ def test_an_edit_of_an_enclosure_recomputes_proofs_and_no_cell() -> None:
 
     assert enclosures(PROVER)
     assert not enclosures(SOLVER)
+
+
+def test_seconds_are_said_from_the_records(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(STEP) == 0
+    merge_records(["out.json"], "log.jsonl")
+    said = seconds_of_proofs("log.jsonl")
+    assert said.startswith("proofs: 1 modes, ") and "windows" not in said
+    Path("log.jsonl").write_text('{"rule": "cell"}\n')
+    assert seconds_of_proofs("log.jsonl") == ""
