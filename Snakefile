@@ -1,7 +1,8 @@
 # The survey, from one config to a dataset with its evidence.
 #
 #   config ──> search ──> cell (depth × precision) ─┐
-#                    └──> witness ──────────────────┴─> dataset ──> figures ──> provenance
+#                    ├──> witness ──────────────────┼─> dataset ──> figures ──> provenance
+#                    └──> proofs ───────────────────┘
 #
 # Run `snakemake` for config/config.yaml, `snakemake --configfile FILE` for another survey.
 
@@ -14,6 +15,7 @@ wildcard_constraints:
     point=r"[a-z]+-l\d+-[a-z0-9_-]+",
     depth=r"\d+",
     precision=r"\d+",
+    extent=r"modes|windows",
 
 
 # Too quick to be worth a cluster's queue.
@@ -34,6 +36,7 @@ rule all:
 include: "workflow/rules/search.smk"
 include: "workflow/rules/cells.smk"
 include: "workflow/rules/witness.smk"
+include: "workflow/rules/proofs.smk"
 include: "workflow/rules/dataset.smk"
 include: "workflow/rules/figures.smk"
 include: "workflow/rules/provenance.smk"

@@ -149,3 +149,15 @@ def test_nothing_is_merged_that_does_not_hold() -> None:
     with pytest.raises(DamagedFile, match=r"a\.nc\.json"):
         merge_records(["cell.json", "a.nc"], "log.jsonl")
     assert not Path("log.jsonl").exists()
+
+
+def test_seconds_of_parts_are_recorded_and_do_not_enter_the_id() -> None:
+    making = Making.begin("proofs", ("search.json",), {})
+    Path("out.json").write_text("proven")
+    making.finish("out.json", {"modes": [0.25, 0.5], "certificate": 4.0})
+    record = Record.read("out.json")
+    assert record is not None
+    assert record.document["timings"] == {"modes": [0.25, 0.5], "certificate": 4.0}
+    making.finish("out.json")
+    again = Record.read("out.json")
+    assert again is not None and again.id == record.id and "timings" not in again.document

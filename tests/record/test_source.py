@@ -73,7 +73,7 @@ def test_a_new_name_for_the_same_text_changes_the_hash(package: Path) -> None:
     assert source.source_hash("knell.high.solve") != before
 
 
-@pytest.mark.parametrize("module", [source.SOLVER, source.DATASET, source.FIGURES])
+@pytest.mark.parametrize("module", [source.SOLVER, source.PROVER, source.DATASET, source.FIGURES])
 def test_nothing_that_python_imports_is_overlooked(module: str) -> None:
     """Import the module in a fresh interpreter: what it loads is in the hash."""
     script = f"import sys, {module}\nprint(*(m.__file__ for n, m in sys.modules.items() if n.split('.')[0] == 'knell'))"

@@ -54,6 +54,7 @@ def test_a_valid_config_is_exact_sorted_and_completed() -> None:
         precisions=(60,),
         required_digits=10,
         window=Fraction(3, 2),
+        proofs="windows",
         results="results/mine",
     )
     assert Config.from_document(json.loads(json.dumps(config.document()))) == config
@@ -108,6 +109,8 @@ def test_ratios_decimals_and_exponents_mean_the_same() -> None:
         ({"window": "deep"}, "mine.yaml:7: window: deep must be a number above 0.1"),
         ({"required_digits": 0}, "mine.yaml:7: required_digits: 0 must be a whole number, 1 or more"),
         ({"required_digits": 61}, "mine.yaml:7: required_digits: 61 digits cannot be had from a precision of 60"),
+        ({"proofs": "all"}, "mine.yaml:7: proofs: all must be one of none, modes, windows"),
+        ({"proofs": None}, "mine.yaml:7: proofs: null must be one of none, modes, windows"),
         ({"results": 3}, "mine.yaml:7: results: 3 must be a folder"),
         ({"results": "results/cells/x"}, "mine.yaml:7: results: results/cells/x is where the default config keeps"),
         ({"results": "/proc/none"}, "mine.yaml:7: results: cannot write to /proc/none: "),
@@ -191,5 +194,5 @@ def test_cells_do_not_depend_on_the_config_that_asks_for_them() -> None:
     wide = load_config(write({}))
     narrow = load_config(write({"couplings": [Fraction(1, 4)], "required_digits": 5, "results": "elsewhere"}))
     assert set(narrow.cell_files()) < set(wide.cell_files())
-    assert len(set(wide.cell_files())) == len(wide.cell_files()) == len(wide.points) * (2 + 1)
+    assert len(set(wide.cell_files())) == len(wide.cell_files()) == len(wide.points) * (3 + 1)
     assert "results/cells/window-3_2/axial-l2-n4-k9_10/aim-N100-P60.json" in wide.cell_files()

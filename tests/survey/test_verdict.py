@@ -10,6 +10,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from knell.survey.agreement import Frequency
+from knell.survey.enclosed import Enclosure
 from knell.survey.evidence import ABSENT, AGREEMENTS, AimRun, Evidence, Run, compare
 from knell.survey.verdict import ROLES, Verdict, judge
 
@@ -35,6 +36,11 @@ def ladder(
         for depth, digits in convergence.items()
         for precision in (40, 80)
     )
+
+
+def disc(centre: tuple[Decimal, Decimal], proven: str = "1e-22", unique: str = "3e-2") -> Enclosure:
+    re, im = centre
+    return Enclosure(Frequency(f"{re:.50f}", f"{im:.50f}"), proven, unique)
 
 
 WITNESSES = {
@@ -210,8 +216,33 @@ def test_the_search_alone_has_no_digits() -> None:
 
 
 def test_an_enclosure_lifts_what_is_settled_and_nothing_else() -> None:
-    assert judge(evidence(CONVERGED), REQUIRED, enclosed=True).verdict is Verdict.proven
-    assert judge(Evidence(search=off(9).value), REQUIRED, enclosed=True).verdict is Verdict.drifting
+    enclosure = disc(TRUE)
+    judgement = judge(evidence(CONVERGED), REQUIRED, GRAVITY, [disc(shifted(-0.2)), enclosure])
+    assert (judgement.verdict, judgement.enclosure) == (Verdict.proven, enclosure)
+    assert judgement.digits == judge(evidence(CONVERGED), REQUIRED, GRAVITY).digits
+    drifting = judge(Evidence(search=off(9).value), REQUIRED, GRAVITY, [enclosure])
+    assert (drifting.verdict, drifting.enclosure) == (Verdict.drifting, enclosure)
+    # Without a look at its unique radius the nearest would do.
+    assert judge(evidence(CONVERGED), REQUIRED, GRAVITY, [disc(shifted(-0.2))]).verdict is Verdict.settled
+
+
+def test_an_enclosure_beside_the_value_takes_its_digits_away() -> None:
+    # AIM converges to 16 digits of something that is wrong by a millionth of the mode, and no witness says so.
+    wrong = Evidence(search=off(9).value, aim=ladder(CONVERGED))
+    assert judge(wrong, REQUIRED).verdict is Verdict.settled
+    enclosure = disc(shifted(1e-6))
+    judgement = judge(wrong, REQUIRED, GRAVITY, [enclosure])
+    assert (judgement.verdict, judgement.enclosure) == (Verdict.drifting, enclosure)
+    assert judgement.digits == pytest.approx(6, abs=0.02)
+    # Where a millionth is enough, the rest of the claim still goes.
+    kept = judge(wrong, 5, GRAVITY, [enclosure])
+    assert (kept.verdict, kept.digits) == (Verdict.proven, judgement.digits)
+
+
+def test_a_value_coarser_than_the_disc_of_uniqueness_is_not_proven() -> None:
+    narrow = disc(TRUE, unique="1e-13")
+    assert judge(evidence(CONVERGED), REQUIRED, GRAVITY, [narrow]).verdict is Verdict.settled
+    assert judge(evidence(CONVERGED), REQUIRED, GRAVITY, [disc(TRUE, unique="1e-11")]).verdict is Verdict.proven
 
 
 def test_in_a_survey_of_one_depth_the_tilt_admits_the_error() -> None:

@@ -23,15 +23,15 @@ DOWNSTREAM = {"dataset", "provenance", "all"}
 
 def of_points(jobs: dict[str, int]) -> dict[str, int]:
     """The jobs that compute, without dataset, figures and what follows."""
-    return {rule: count for rule, count in jobs.items() if rule in ("search", "cell", "witness")}
+    return {rule: count for rule, count in jobs.items() if rule in ("search", "cell", "witness", "proofs")}
 
 
 def test_a_run_makes_everything_with_a_record(finished: Workflow) -> None:
     results = finished.folder / "results"
     cells = finished.cells()
-    assert len(cells) == 2 * (2 + 2)
+    assert len(cells) == 2 * (3 + 2)
     for name in cells:
-        kind = re.sub(r"aim-.*", "cell", Path(name).stem)
+        kind = re.sub(r"aim-.*", "cell", Path(name).stem).removesuffix("-modes")
         assert jsonfile.read(finished.folder / name, kind)["kind"] == kind
     lines = (results / "tiny/provenance.jsonl").read_text().splitlines()
     recorded = {record["file"]: record for record in map(json.loads, lines)}
@@ -101,11 +101,24 @@ def test_a_wider_grid_computes_only_what_is_new(copied: Workflow) -> None:
     before = copied.cells()
     text = copied.config.read_text()
     copied.config.write_text(text.replace("couplings: [1/2]", "couplings: [1/4, 1/2]"))
-    assert of_points(copied.jobs()) == {"search": 1, "cell": 2, "witness": 1}
+    assert of_points(copied.jobs()) == {"search": 1, "cell": 2, "witness": 1, "proofs": 1}
     copied.config.write_text(text.replace("depths: [40, 60]", "depths: [40, 50, 60]"))
     assert of_points(copied.jobs()) == {"cell": 2}
     after = copied.complete().cells()
     assert len(after) == len(before) + 2 and before.items() <= after.items()
+
+
+def test_proofs_are_turned_off_and_on_without_computing_anything(copied: Workflow) -> None:
+    text, proven = copied.config.read_text(), copied.dataset
+    copied.config.write_text(text.replace("proofs: modes", "proofs: none"))
+    jobs = copied.jobs()
+    assert of_points(jobs) == {} and jobs.keys() >= DOWNSTREAM
+    assert copied.complete().dataset != proven
+    copied.config.write_text(text.replace("proofs: modes", "proofs: windows"))
+    assert of_points(copied.jobs()) == {"proofs": 2}
+    copied.config.write_text(text)
+    assert of_points(copied.jobs()) == {}
+    assert copied.complete().dataset == proven
 
 
 def test_another_config_shares_the_cells(copied: Workflow) -> None:

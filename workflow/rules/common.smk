@@ -26,6 +26,7 @@ shell.prefix(
 )
 
 SOLVER = source.source_hash(source.SOLVER)
+PROVER = source.source_hash(source.PROVER)
 OVERRIDES = workflow.config_settings.config
 
 

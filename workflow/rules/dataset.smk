@@ -31,6 +31,7 @@ rule dataset:
         f"{CONFIG.results}/benchmarks/dataset.tsv"
     params:
         solver=SOLVER,
+        prover=PROVER if CONFIG.proofs != "none" else "",
         source=source.source_hash(source.DATASET),
     shell:
         "logged {log:q} knell merge --config {input.config:q} --output {output.result:q}"

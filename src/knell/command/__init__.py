@@ -28,6 +28,7 @@ STEPS = {
     "search": "find every mode in the window of a point",
     "cell": "solve by asymptotic iteration at one depth and precision",
     "witness": "compute the modes of a point by other methods",
+    "proofs": "prove the modes of a point, and that they are all of its window",
     "merge": "judge all results and write the dataset",
     "figure": "draw one figure of the dataset",
     "record": "check every file against its record and merge the records",

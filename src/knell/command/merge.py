@@ -6,8 +6,9 @@ import argparse
 
 from knell.errors import FileError, StaleError
 from knell.record.provenance import Making
-from knell.record.source import DATASET, SOLVER, source_hash
+from knell.record.source import DATASET, PROVER, SOLVER, source_hash
 from knell.survey.config import read_completed
+from knell.survey.config_schema import NO_PROOFS
 
 DESCRIPTION = "Read every result of the survey, judge the modes and write the dataset."
 
@@ -29,6 +30,12 @@ def run(arguments: argparse.Namespace) -> None:
         raise StaleError(
             f"the cells were made by another state of the solver ({result.attrs['source']}) than the one here, "
             f"{solver}; run snakemake --forcerun search"
+        )
+    prover = source_hash(PROVER)
+    if config.proofs != NO_PROOFS and prover not in result.attrs["source"]:
+        raise StaleError(
+            f"the proofs were made by another state of their code ({result.attrs['source']}) than the one here, "
+            f"{prover}; run snakemake --forcerun proofs"
         )
     result.attrs["record"] = making.id
     try:

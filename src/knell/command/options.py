@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import argparse
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
@@ -77,11 +77,11 @@ class Task:
         stated = {"point": point.document(), "window": str(window), "solver": solver, **parameters}
         return cls(point, window, arguments.output, solver, Making.begin(kind, inputs, stated))
 
-    def finish(self, document: dict[str, Any]) -> None:
-        """Write the result and its record, each whole or not at all."""
+    def finish(self, document: dict[str, Any], timings: Mapping[str, Any] | None = None) -> None:
+        """Write the result and its record, each whole or not at all; seconds of parts go to the record alone."""
         kind = self.making.rule
         jsonfile.write(self.output, {**document, "kind": kind, "format": jsonfile.FORMAT, "solver": self.solver})
-        self.making.finish(self.output)
+        self.making.finish(self.output, timings)
 
 
 def read_search(path: str, task: Task) -> dict[str, Any]:

@@ -37,7 +37,7 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     extent.add_argument("--window", type=rational, help="prove every mode with |Im Mω| up to this, such as 1.5")
     parser.add_argument("--digits", type=whole(1), default=DIGITS, help="decimals to prove; default: %(default)s")
     parser.add_argument("--json", action="store_true", help="print objects, each with the record of its proof")
-    parser.add_argument("--recheck", metavar="FILE", help="run the proofs of a file written with --json again")
+    parser.add_argument("--recheck", metavar="FILE", help="run the proofs of a file again: from --json, or of a survey")
 
 
 def run(arguments: argparse.Namespace) -> int:
@@ -79,7 +79,7 @@ def point_of(arguments: argparse.Namespace) -> Point:
 
 def _recheck(arguments: argparse.Namespace) -> int:
     from knell.methods.enclosure.refusal import Refusal
-    from knell.survey import proofs
+    from knell.survey import certify, proofs
 
     path = arguments.recheck
     try:
@@ -90,10 +90,14 @@ def _recheck(arguments: argparse.Namespace) -> int:
     except ValueError as error:
         raise DamagedFile(f"{path}: is no JSON file: {error}") from None
     try:
-        print("\n".join(proofs.recheck(document)))
+        print("\n".join(certify.recheck(document) if _of_survey(document) else proofs.recheck(document)))
     except Refusal as reason:
         raise NotProven(f"{path}: {reason}") from None
     return 0
+
+
+def _of_survey(document: Any) -> bool:
+    return isinstance(document, Mapping) and document.get("kind") == "proofs"
 
 
 def as_table(point: Point, modes: Sequence[Mapping[str, Any]]) -> str:

@@ -21,6 +21,7 @@ _LIBRARIES = {
     "search": _SOLVER,
     "cell": _SOLVER,
     "witness": _SOLVER,
+    "proofs": _SOLVER,
     "dataset": (*_SOLVER, "xarray", "netCDF4"),
     "figure": ("python", "knell", "numpy", "xarray", "netCDF4", "matplotlib"),
 }

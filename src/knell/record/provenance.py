@@ -64,8 +64,11 @@ class Making:
         )
         return hashlib.sha256(text.encode()).hexdigest()[:16]
 
-    def finish(self, path: str) -> None:
-        """Write the record of ``path``, made from this, with the seconds since the process began."""
+    def finish(self, path: str, timings: Mapping[str, Any] | None = None) -> None:
+        """Write the record of ``path``, made from this, with the seconds since the process began.
+
+        ``timings`` are seconds of parts of the work, by name. Like all seconds they do not enter the id.
+        """
         jsonfile.write(
             record_path(path),
             {
@@ -80,6 +83,7 @@ class Making:
                 "code": self._code(),
                 "versions": self.code.versions_for(self.rule),
                 "seconds": round(perf_counter() - _STARTED, 3),
+                **({"timings": dict(timings)} if timings else {}),
             },
         )
 

@@ -16,6 +16,7 @@ from pathlib import Path
 
 PACKAGE = Path(__file__).resolve().parents[1]
 SOLVER = "knell.survey.solve"
+PROVER = "knell.survey.certify"
 DATASET = "knell.survey.dataset"
 FIGURES = "knell.readout.figures"
 

@@ -13,6 +13,7 @@ from typing import Any
 from knell.errors import ConfigError, InputError
 from knell.physics.exact import parse_rational, rational_text
 from knell.survey import exact_yaml, jsonfile
+from knell.survey.config_schema import NO_PROOFS
 from knell.survey.exact_yaml import ExactYaml, KeyPath, show_path, show_value
 from knell.survey.layout import CELLS, CellFolder
 from knell.survey.points import Point, grid
@@ -20,6 +21,7 @@ from knell.survey.points import Point, grid
 DEFAULT = "config/config.yaml"
 DEFAULT_REQUIRED_DIGITS = 10
 DEFAULT_WINDOW = Fraction(3, 2)
+DEFAULT_PROOFS = "windows"
 # Folders that the default config fills in results/: a config of that name would write into them.
 _TAKEN = ("benchmarks", "cells", "figures", "logs")
 
@@ -29,7 +31,8 @@ class Config:
     """A valid config. Lists are ascending; couplings and the window's depth are exact.
 
     ``ell`` gives the list of ``ℓ`` of each field, ``overtones`` the labels asked for,
-    ``window`` the largest ``|Im Mω|``, ``results`` the folder of everything but the cells.
+    ``window`` the largest ``|Im Mω|``, ``proofs`` what is proven (``none``, ``modes`` or ``windows``), ``results`` the
+    folder of everything but the cells.
     """
 
     ell: Mapping[str, tuple[int, ...]]
@@ -40,6 +43,7 @@ class Config:
     precisions: tuple[int, ...]
     required_digits: int
     window: Fraction
+    proofs: str
     results: str
 
     @property
@@ -52,10 +56,11 @@ class Config:
         return CellFolder(point, self.window, root)
 
     def cell_files(self, root: str = CELLS) -> list[str]:
-        """Every file that the survey computes for its points: searches, witnesses and cells."""
+        """Every file that the survey computes for its points: searches, witnesses, cells and proofs."""
         files = []
         for folder in (self.folder(point, root) for point in self.points):
             files += [folder.search, folder.witness]
+            files += [] if self.proofs == NO_PROOFS else [folder.proofs(self.proofs)]
             files += [folder.cell(depth, precision) for depth in self.depths for precision in self.precisions]
         return files
 
@@ -70,6 +75,7 @@ class Config:
             "precisions": list(self.precisions),
             "required_digits": self.required_digits,
             "window": rational_text(self.window),
+            "proofs": self.proofs,
             "results": self.results,
         }
 
@@ -82,6 +88,7 @@ class Config:
             couplings=tuple(parse_rational(x) for x in document["couplings"]),
             required_digits=document["required_digits"],
             window=parse_rational(document["window"]),
+            proofs=document["proofs"],
             results=document["results"],
             **whole,
         )
@@ -187,6 +194,7 @@ def _complete(values: Mapping[str, Any], path: str | Path) -> Config:
         precisions=tuple(sorted(values["precisions"])),
         required_digits=values.get("required_digits", DEFAULT_REQUIRED_DIGITS),
         window=Fraction(values.get("window", DEFAULT_WINDOW)),
+        proofs=values.get("proofs", DEFAULT_PROOFS),
         results=str(PurePosixPath(values.get("results", default_results(path)))),
     )
 

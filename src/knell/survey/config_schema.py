@@ -14,6 +14,9 @@ from knell.physics.field import LOWEST_ELL
 Schema = dict[str, Any]
 EXCLUDED_SQUARE = Fraction(1, 10)
 LEAST_PRECISION = 15
+# What is proven of each point: nothing, its modes, or its modes and that they are all of its window.
+NO_PROOFS = "none"
+PROOFS = (NO_PROOFS, "modes", "windows")
 
 
 def _whole(least: int, why: str = "") -> Schema:
@@ -71,6 +74,7 @@ CONFIG: Schema = {
             "exclusiveMinimum": EXCLUDED_SQUARE,
             "description": "a number above 0.1: the depth of the window, the largest |Im Mω|, such as 1.5",
         },
+        "proofs": {"enum": list(PROOFS), "description": "one of none, modes, windows"},
         "results": {"type": "string", "minLength": 1, "description": "a folder, such as results/mine"},
     },
 }

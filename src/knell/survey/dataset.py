@@ -9,7 +9,7 @@ empty. Schwarzschild has its own variables and is the reference of every shift:
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from decimal import localcontext
 from fractions import Fraction
 from pathlib import Path
@@ -27,6 +27,7 @@ from knell.survey import dataset_file, jsonfile
 from knell.survey import dataset_schema as schema
 from knell.survey.agreement import Frequency, agreement, rounded
 from knell.survey.config import Config
+from knell.survey.enclosed import Enclosure
 from knell.survey.evidence import AGREEMENTS
 from knell.survey.layout import CELLS
 from knell.survey.points import Point
@@ -61,14 +62,16 @@ def assemble(config: Config, cells: str = CELLS) -> xr.Dataset:
     _store_holes(arrays, config)
     for place, point in _references(config):
         _store_overtones(arrays, "schwarzschild_", place, config, judged[point])
+        _store_window_proof(arrays, "schwarzschild_", place, results[point], judged[point])
     for place, point in _grid(config):
         _store_point(arrays, place, results[point])
+        _store_window_proof(arrays, "", place, results[point], judged[point])
         _store_overtones(arrays, "", place, config, judged[point])
         _store_beside(arrays, place, judged[point])
         _store_ladder(arrays, place, config, results[point])
         _store_shifts(arrays, place, config, judged[point], judged[point.reference])
     return dataset_file.to_xarray(
-        schema.variables(), schema.coordinates(), arrays | coordinates, _attributes(config, first.solver)
+        schema.variables(), schema.coordinates(), arrays | coordinates, _attributes(config, first)
     )
 
 
@@ -76,16 +79,26 @@ def _read(config: Config, cells: str) -> dict[Point, PointResults]:
     ladder = [(depth, precision) for depth in config.depths for precision in config.precisions]
     results: dict[Point, PointResults] = {}
     for point in config.points:
-        results[point] = read_point(config.folder(point, cells), ladder)
+        results[point] = read_point(config.folder(point, cells), ladder, config.proofs)
         if results[point].solver != results[config.points[0]].solver:
             search = config.folder(point, cells).search
             raise StaleError(f"{search}: made by another state of the solver than the first; run snakemake again")
+        if _prover(results[point]) != _prover(results[config.points[0]]):
+            path = config.folder(point, cells).proofs(config.proofs)
+            raise StaleError(f"{path}: proven by another state of the code than the first; run snakemake again")
     return results
+
+
+def _prover(result: PointResults) -> str:
+    return result.proofs.prover if result.proofs else ""
 
 
 def _judge_all(config: Config, point: Point, result: PointResults) -> Judged:
     gravity = surface_gravity(point.background())
-    return {key: judge(evidence, config.required_digits, gravity) for key, evidence in result.modes.items()}
+    return {
+        key: judge(evidence, config.required_digits, gravity, result.enclosures)
+        for key, evidence in result.modes.items()
+    }
 
 
 def _beside(modes: Judged) -> list[Judgement]:
@@ -149,6 +162,25 @@ def _store_point(arrays: Arrays, place: Index, result: PointResults) -> None:
             arrays[f"window_{name}"][place] = getattr(result.zeros, name)
 
 
+def _store_window_proof(arrays: Arrays, prefix: str, place: Index, result: PointResults, modes: Judged) -> None:
+    proofs = result.proofs
+    if proofs is None:
+        return
+    arrays[f"{prefix}no_growing_mode"][place] = schema.GROWING_FLAGS[proofs.growing]
+    if not proofs.window_asked:
+        return
+    complete = proofs.count is not None and _each_in_its_own(proofs.enclosures, list(modes.values()))
+    arrays[f"{prefix}complete"][place] = schema.COMPLETE_FLAGS["proven" if complete else "not_proven"]
+    if proofs.count is not None:
+        arrays[f"{prefix}window_count_proven"][place] = proofs.count
+
+
+def _each_in_its_own(enclosures: Sequence[Enclosure], modes: Sequence[Judgement]) -> bool:
+    """Whether the modes and the enclosures pair up, none left over."""
+    taken = {mode.enclosure for mode in modes}
+    return None not in taken and len(modes) == len(taken) == len(enclosures)
+
+
 def _store_overtones(arrays: Arrays, prefix: str, place: Index, config: Config, modes: Judged) -> None:
     for i, overtone in enumerate(config.overtones):
         judgement = modes.get(("principal", overtone))
@@ -175,6 +207,10 @@ def _store_mode(arrays: Arrays, prefix: str, place: Index, judgement: Judgement)
         if agreement_name in judgement.agreements:
             arrays[f"{prefix}agreement_digits"][(*place, i)] = judgement.agreements[agreement_name]
             arrays[f"{prefix}agreement_role"][(*place, i)] = schema.ROLE_FLAGS[judgement.roles[agreement_name]]
+    if judgement.enclosure is not None:
+        centre = judgement.enclosure.centre
+        arrays[f"{prefix}proven_re_text"][place], arrays[f"{prefix}proven_im_text"][place] = centre.re, centre.im
+        arrays[f"{prefix}proven_radius"][place], arrays[f"{prefix}unique_radius"][place] = judgement.enclosure.radii
 
 
 def _store_ladder(arrays: Arrays, place: Index, config: Config, result: PointResults) -> None:
@@ -210,8 +246,9 @@ def _shift(value: Frequency, reference: Frequency) -> tuple[float, float]:
     return re, im
 
 
-def _attributes(config: Config, solver: str) -> dict[str, Any]:
+def _attributes(config: Config, first: PointResults) -> dict[str, Any]:
     """Global attributes: what the file is, what made it, and what it does not say."""
+    prover = f", prover {first.proofs.prover}" if first.proofs else ""
     return {
         "title": "Quasinormal modes of deformed, non-rotating black holes",
         "summary": (
@@ -221,7 +258,7 @@ def _attributes(config: Config, solver: str) -> dict[str, Any]:
         ),
         "limits": schema.LIMITS,
         "Conventions": "CF-1.11",
-        "source": f"knell {__version__}, solver {solver}",
+        "source": f"knell {__version__}, solver {first.solver}{prover}",
         "required_digits": np.int32(config.required_digits),
         "config": jsonfile.canonical(config.document()),
     }

@@ -21,6 +21,9 @@ NOT_SURVEYED = 0
 BASIS_FLAGS = {basis: flag for flag, basis in enumerate(BASES, start=1)}
 ROLE_FLAGS = {role: flag for flag, role in enumerate(ROLES)}
 STATUS_FLAGS = {status: flag for flag, status in enumerate(("ok", "starved", "refused", "failed", "absent"), start=1)}
+# Not asked is 0 here, the flag of points that are not surveyed.
+COMPLETE_FLAGS = {"not_asked": 0, "not_proven": 1, "proven": 2}
+GROWING_FLAGS = {"not_asked": 0, "none": 1, "count": 2, "energy": 3}
 SEARCH_FLAGS = {"ok": 1, "failed": 2}
 
 
@@ -85,6 +88,37 @@ def mode_variables(prefix: str, dims: tuple[str, ...], whose: str) -> dict[str, 
         ),
         f"{prefix}agreement_digits": number(agreements, f"digits two runs share, {whose}"),
         f"{prefix}agreement_role": flags(agreements, f"part the agreement plays in the digits, {whose}", ROLE_FLAGS),
+        f"{prefix}proven_re_text": text(dims, f"real part of the centre of the proven disc, {whose}"),
+        f"{prefix}proven_im_text": text(dims, f"imaginary part of the centre of the proven disc, {whose}"),
+        f"{prefix}proven_radius": number(dims, f"the mode is proven to be this close to the centre, {whose}"),
+        f"{prefix}unique_radius": number(dims, f"proven: no other mode is this close to the centre, {whose}"),
+    }
+
+
+def window_proof_variables(prefix: str, dims: tuple[str, ...]) -> dict[str, Variable]:
+    """What is proven of a whole window."""
+    return {
+        f"{prefix}window_count_proven": number(
+            dims,
+            "zeros proven to be in the window, a strip beyond the imaginary axis included",
+            comment="modes, zeros of the continued sheet and of cleared factors",
+        ),
+        f"{prefix}complete": flags(
+            dims,
+            "whether the list of the window is proven complete",
+            COMPLETE_FLAGS,
+            comment="proven: the modes of the search are all those of the window, each in a proven disc of its own",
+        ),
+        f"{prefix}no_growing_mode": flags(
+            dims,
+            "whether it is proven that no mode grows",
+            ("not_asked", "not_proven", "proven_by_count", "proven_by_energy"),
+            comment=(
+                "by energy: the potential is nowhere negative outside the horizon, which excludes every growing mode; "
+                "by count: no zero in the growing half-plane outside the square that the window leaves out, up to "
+                "the largest growth that the potential allows"
+            ),
+        ),
     }
 
 
@@ -112,6 +146,8 @@ def variables() -> dict[str, Variable]:
         "window_found": number(POINT, "zeros found in the window, the continued sheet included"),
         "window_continued": number(POINT, "zeros of the continued sheet in the window: Re M omega below 0, no modes"),
         "window_undetermined": number(POINT, "zeros so close to the axis that their side could not be decided"),
+        **window_proof_variables("", POINT),
+        **window_proof_variables("schwarzschild_", ("field", "ell")),
         "window_re_max": number(POINT, "right edge of the window in Re M omega"),
         "window_depth": number((), "depth of the window: the largest -Im M omega"),
         "window_excluded": number((), "half-side of the square about M omega = 0 that the window leaves out"),

@@ -1,6 +1,7 @@
 """Where the files of a survey lie.
 
-    results/cells/window-<depth>/<point>/    search.json, witness.json, aim-N<depth>-P<precision>.json
+    results/cells/window-<depth>/<point>/    search.json, witness.json, aim-N<depth>-P<precision>.json,
+                                             proofs-modes.json or proofs-windows.json
     <results of the config>/                 config.json, survey.nc, figures/, provenance.jsonl
 
 Cells are named by what they depend on alone, so every config shares them. Beside each
@@ -40,6 +41,10 @@ class CellFolder:
     @property
     def witness(self) -> str:
         return f"{self.folder}/witness.json"
+
+    def proofs(self, extent: str) -> str:
+        """Proofs of the ``modes``, or of the complete ``windows``."""
+        return f"{self.folder}/proofs-{extent}.json"
 
     def cell(self, depth: int, precision: int) -> str:
         """AIM at iteration depth ``depth`` in ``precision`` decimal digits."""

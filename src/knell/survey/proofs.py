@@ -126,7 +126,7 @@ def recheck(document: Any) -> list[str]:
     if document.get("count") != certificate.count.number:
         raise BadRecord("the count differs from that of its proof")
     _same_window(document, certificate.count)
-    lines = [_line(one) for one in certificate.zeros]
+    lines = [line(one) for one in certificate.zeros]
     return [*lines, f"{certificate.count.number} zeros counted, {len(certificate.zeros)} proven: complete"]
 
 
@@ -135,7 +135,7 @@ def _recheck_entry(entry: Any) -> str:
         raise BadRecord("an entry holds no proof")
     one = record.recheck_zero(entry["proof"])
     _same(entry, _statement(one))
-    return _line(one)
+    return line(one)
 
 
 def _same(entry: Mapping[str, Any], proven: Mapping[str, str]) -> None:
@@ -150,7 +150,7 @@ def _same_window(document: Mapping[str, Any], count: Count) -> None:
         raise BadRecord("the window differs from that of its proof")
 
 
-def _line(one: Proven) -> str:
+def line(one: Proven) -> str:
     s = one.statement
     return f"{s.kind} {s.frequency_re} {s.frequency_im}i: within {s.proven_radius}, unique within {s.unique_radius}"
 

@@ -1,4 +1,4 @@
-"""Results of one point: its search, witness and cells, read from disk and put together mode by mode.
+"""Results of one point: its search, witness, cells and proofs, read from disk and put together mode by mode.
 
 Every file is checked against its checksum, against the parameters its name stands for, and
 against the solver that made the others: nothing damaged, misplaced or stale gets through.
@@ -13,6 +13,8 @@ from typing import Any
 from knell.errors import DamagedFile, FileError, StaleError
 from knell.survey import jsonfile
 from knell.survey.agreement import Frequency
+from knell.survey.config_schema import NO_PROOFS
+from knell.survey.enclosed import Enclosure
 from knell.survey.evidence import ABSENT, AimRun, Evidence, Run
 from knell.survey.layout import CellFolder
 
@@ -33,11 +35,23 @@ class Zeros:
 
 
 @dataclass(frozen=True)
+class Proofs:
+    """What is proven of a point: its modes; the number of zeros in its window's region, None where that is not
+    proven (the continued sheet and cleared factors included); how growing modes are excluded; by which code."""
+
+    enclosures: tuple[Enclosure, ...]
+    window_asked: bool
+    count: int | None
+    growing: str
+    prover: str
+
+
+@dataclass(frozen=True)
 class PointResults:
     """What the survey knows of one point.
 
     ``modes`` maps (family, index) to its evidence, in the order of the search; it is empty, and
-    ``zeros`` is None, when the search failed.
+    ``zeros`` is None, when the search failed. ``proofs`` is None where none were asked for.
     """
 
     status: str
@@ -45,10 +59,18 @@ class PointResults:
     window: Mapping[str, str]
     solver: str
     modes: Mapping[ModeKey, Evidence]
+    proofs: Proofs | None = None
+
+    @property
+    def enclosures(self) -> tuple[Enclosure, ...]:
+        return self.proofs.enclosures if self.proofs else ()
 
 
-def read_point(folder: CellFolder, ladder: Iterable[tuple[int, int]]) -> PointResults:
-    """Read the search, the witness and the cells (depth, precision) of one point.
+def read_point(folder: CellFolder, ladder: Iterable[tuple[int, int]], extent: str = NO_PROOFS) -> PointResults:
+    """Read the search, the witness, the cells (depth, precision) and the proofs of one point.
+
+    ``extent`` is the config's ``proofs``: ``none``, ``modes`` or ``windows``.
+
 
     Raises `FileError` for a file that is not there, `DamagedFile` for one that is damaged or
     not what its name says, `StaleError` when two of them come from different solvers.
@@ -73,6 +95,24 @@ def read_point(folder: CellFolder, ladder: Iterable[tuple[int, int]]) -> PointRe
             key: evidence_of(mode, witnesses.get(key, {}), {rung: modes.get(key) for rung, modes in aim.items()})
             for key, mode in (_by_mode(search).items() if ok else ())
         },
+        proofs=None if extent == NO_PROOFS else _read_proofs(folder, extent, search),
+    )
+
+
+def _read_proofs(folder: CellFolder, extent: str, search: Mapping[str, Any]) -> Proofs:
+    path = folder.proofs(extent)
+    document = _read(path, "proofs", folder, search)
+    if document["extent"] != extent:
+        raise DamagedFile(f"{path}: holds proofs of {document['extent']}; {_REMEDY}")
+    zeros = (*document["modes"], *document["others"])
+    certificate = document["certificate"]
+    return Proofs(
+        # A mode that is not proven has no statement; a zero of another kind is no mode.
+        enclosures=tuple(Enclosure.from_document(zero) for zero in zeros if zero.get("kind") == "mode"),
+        window_asked=extent == "windows",
+        count=certificate["count"] if certificate["status"] == "proven" else None,
+        growing=document["growing"]["method"],
+        prover=document["prover"],
     )
 
 

@@ -21,15 +21,20 @@ with the match to 6, the mode has 6 and drifts.
 
 The search saw the mode first, in doubles. A run that agrees with it to fewer than
 `SAME_MODE` digits has gone to another mode: then ``search`` counts too.
+
+A rigorous enclosure, where there is one, is the judge of the digits: a value has at most those
+that its distance from the proven disc leaves it (see `enclosed`). What is settled and singled out
+by an enclosure is ``proven``.
 """
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from enum import IntEnum
 
 from knell.survey.agreement import Frequency, agreement
+from knell.survey.enclosed import Enclosure, enclosing
 from knell.survey.evidence import AGREEMENTS, Evidence, Link, compare
 
 # A difference of two runs falls short of their error by a factor of 30 once in a thousand.
@@ -63,7 +68,7 @@ MEANINGS = {
     Verdict.special: "at -i m surface_gravity, where smoothness at the horizon does not select the ingoing wave",
     Verdict.drifting: "found, but the agreements do not reach the required digits",
     Verdict.settled: "at least two agreements, all that count reach the required digits",
-    Verdict.proven: "settled, and a rigorous enclosure exists",
+    Verdict.proven: "settled, and proven in ball arithmetic: exactly one mode lies in a disc that holds the value",
 }
 
 
@@ -73,7 +78,7 @@ class Judgement:
 
     ``agreements`` and ``roles`` hold the same names (see `evidence.AGREEMENTS`), absent ones left
     out. A role is one of `ROLES`; ``beside`` is an agreement that is not of the basis.
-    ``digits`` is 0 where there is no agreement.
+    ``digits`` is 0 where there is no agreement. ``enclosure`` is the proven disc of the mode, if there is one.
     """
 
     verdict: Verdict
@@ -82,15 +87,19 @@ class Judgement:
     digits: float
     agreements: dict[str, float]
     roles: dict[str, str]
+    enclosure: Enclosure | None = None
 
 
 def judge(
-    evidence: Evidence, required_digits: float, surface_gravity: float = 0.0, enclosed: bool = False
+    evidence: Evidence,
+    required_digits: float,
+    surface_gravity: float = 0.0,
+    enclosures: Iterable[Enclosure] = (),
 ) -> Judgement:
     """The verdict on one mode the search found.
 
-    ``surface_gravity`` is ``M κ_s`` (0 at the extremal end); ``enclosed`` says that a rigorous
-    enclosure holds the value. Raises `ValueError` for text that is no frequency.
+    ``surface_gravity`` is ``M κ_s`` (0 at the extremal end); ``enclosures`` are those of all modes of
+    the point. Raises `ValueError` for text that is no frequency.
     """
     links = compare(evidence)
     bases = {basis: _roles(links, basis, required_digits) for basis in BASES}
@@ -103,14 +112,18 @@ def judge(
         roles["search"] = "beside" if seen >= SAME_MODE else "contradiction"
     counted = _counted(links, roles)
     digits = min(counted, default=0.0)
+    enclosure = enclosing(value, enclosures)
+    if enclosure:
+        digits = min(digits, enclosure.digits_at_most(value))
     enough = len(counted) >= 2 and digits >= required_digits
     return Judgement(
-        verdict=_verdict(links, value, digits, enough, surface_gravity, enclosed),
+        verdict=_verdict(links, value, digits, enough, surface_gravity, enclosure),
         value=value,
         basis=basis,
         digits=digits,
         agreements={name: links[name].digits for name in AGREEMENTS if name in links},
         roles={name: roles[name] for name in AGREEMENTS if name in roles},
+        enclosure=enclosure,
     )
 
 
@@ -154,7 +167,12 @@ def _value(evidence: Evidence, basis: str) -> Frequency:
 
 
 def _verdict(
-    links: Mapping[str, Link], value: Frequency, digits: float, enough: bool, surface_gravity: float, enclosed: bool
+    links: Mapping[str, Link],
+    value: Frequency,
+    digits: float,
+    enough: bool,
+    surface_gravity: float,
+    enclosure: Enclosure | None,
 ) -> Verdict:
     if _is_special(value, digits, surface_gravity):
         return Verdict.special
@@ -167,7 +185,7 @@ def _verdict(
     # A mode closer to the axis than its error may belong to the continued sheet.
     if not enough or real <= error:
         return Verdict.drifting
-    return Verdict.proven if enclosed else Verdict.settled
+    return Verdict.proven if enclosure and enclosure.singles_out(value, digits) else Verdict.settled
 
 
 def _is_special(value: Frequency, digits: float, surface_gravity: float) -> bool:

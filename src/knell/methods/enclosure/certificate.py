@@ -75,14 +75,22 @@ def count_window(problem: Problem, window: Window) -> Count:
     raise refusal or NoCount("no region to count in")
 
 
-def certify_window(problem: Problem, window: Window, digits: int = 30, proposed: Iterable[complex] = ()) -> Certificate:
+def certify_window(
+    problem: Problem,
+    window: Window,
+    digits: int = 30,
+    proposed: Iterable[complex] = (),
+    proven: Iterable[Proven] = (),
+) -> Certificate:
     """The complete list of a window, from zeros proposed as ``Mω``; where they fall short, models propose more.
 
-    Raises `NoCount` or `Incomplete`.
+    Zeros of the problem that are ``proven`` already are not proven again. Raises `NoCount` or `Incomplete`.
     """
     count = count_window(problem, window)
     found: list[Proven] = []
     failures: list[str] = []
+    for one in proven:
+        _admit(count.region, found, one)
     _add(problem, count.region, found, failures, proposed, digits)
     if len(found) < count.number:
         _add(problem, count.region, found, failures, proposals(problem, count.region), digits)
@@ -119,8 +127,12 @@ def _add(
         except Refusal as reason:
             failures.append(f"{complex(omega):.6f}: {reason}")
             continue
-        if all(apart(one, other) for other in found) and not _outside(region, one):
-            found.append(one)
+        _admit(region, found, one)
+
+
+def _admit(region: Region, found: list[Proven], one: Proven) -> None:
+    if all(apart(one, other) for other in found) and not _outside(region, one):
+        found.append(one)
 
 
 def near(one: Proven, omega: complex) -> bool:
