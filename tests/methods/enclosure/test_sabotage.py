@@ -234,9 +234,7 @@ def residuals():
         rest = sigma * kappa.derivative() - sigma * sigma * acb_poly(list(segment.q)) - acb_poly(list(segment.w))
         full = (p * phi.derivative()).derivative() + 2 * sigma * kappa * phi.derivative() + rest * phi
         rows = S.factors(segment, ring)
-        for k, row in rows:
-            if k == 2:
-                break
+        k, row = next((k, row) for k, row in rows if k == 2)
         total = S._residual(ring, a, k, row, rows)
         exact = sum((c.abs_lower() for c in full.coeffs()[2:]), arb(0))
         assert bool(exact.lower() <= total) and bool(total < exact * arb("1.0001"))
