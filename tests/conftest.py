@@ -2,6 +2,11 @@
 
 from __future__ import annotations
 
+import os
+
+# As in the commands: one core for one process. Set before NumPy is loaded, which reads it once.
+os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+
 from collections.abc import Callable, Mapping
 from decimal import Decimal
 from fractions import Fraction

@@ -131,5 +131,7 @@ def _attempt(
         return None, "Newton does not converge"
     surprise = np.abs(corrected - predicted)
     allowed = np.minimum(_SURPRISE, _NEIGHBOURLY * separation(corrected))
+    if not np.min(allowed) > 0:
+        return None, "two tracks on one zero"
     ratio = float(np.max(surprise / allowed))
     return (corrected, ratio) if ratio <= 1 else (None, f"zeros near {corrected[np.argmax(surprise / allowed)]:.6f}")
