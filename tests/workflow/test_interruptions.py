@@ -100,6 +100,7 @@ def test_a_lost_job_does_not_take_the_others_with_it(survey: Workflow, finished:
     os.kill(shell, signal.SIGKILL)
     text = run.communicate()[0]
     assert run.returncode == 1 and "search.smk" in text
-    assert (files_of(survey, "schwarzschild"), files_of(survey, "n4-k1_2/aim")) == (4, 0)
+    # A search, a witness, proofs and two cells.
+    assert (files_of(survey, "schwarzschild"), files_of(survey, "n4-k1_2/aim")) == (5, 0)
     wait_until_dead(survey, orphans)
     same_as(survey, finished)
