@@ -8,8 +8,6 @@ coefficient of a series that is nudged, or a midpoint taken on the way, only mak
 
 from __future__ import annotations
 
-import os
-
 import importlib.util
 import sys
 from contextlib import contextmanager
@@ -743,8 +741,6 @@ def test_probes_pass_on_the_package_as_it_is(probe):
     ],
 )
 def test_a_sabotage_is_noticed(module, old, new, probe):
-    if "[40-" in os.environ.get("PYTEST_CURRENT_TEST", ""):
-        pytest.skip("this sabotage has not ended within four minutes; open")
     with edited(module, old, new):
         noticed = ""
         try:

@@ -44,6 +44,8 @@ TRIES = (
     (0.003, Effort(32, 20, Stride(0.4, 3.5))),
     (0.001, Effort(40, 20, Stride(0.4, 3.5))),
 )
+# The secant method doubles the digits in fewer than two rounds: 200 digits take eight.
+_ROUNDS = 20
 # Factors 1 - 2σ/(p₁j) that vanish within this many radii of the centre are cleared.
 REACH = 6.0
 
@@ -180,7 +182,9 @@ def refine(problem: Problem, first: Uniqueness, sigma: acb, slope: acb, digits: 
     """Step B by the secant method on its own values, from ``sigma`` and a first guess of ``dD/dσ``."""
     flatness = max(0.0, -_log10(first.slope))
     goal, last, stuck = min(22.0, digits) + flatness, None, 0
-    while stuck < 4:
+    for _ in range(_ROUNDS):
+        if stuck == 4:
+            break
         zero, found = shrink(problem, first, prepare(problem, sigma, 0.0, value_effort(goal), first.run.cleared))
         if bool(zero.radius < arb(10) ** -digits):
             return zero
